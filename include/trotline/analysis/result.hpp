@@ -1,0 +1,128 @@
+#pragma once
+
+#include <limits>
+#include <optional>
+#include <string>
+#include <utility>
+#include <vector>
+
+namespace trotline {
+
+inline constexpr double kNotKnown = std::numeric_limits<double>::quiet_NaN();
+
+/// A number with its error and intervals. NaN where not known; an interval's end is NaN where the data
+/// set no bound on that side.
+struct Estimate {
+  double value = kNotKnown;
+  double error = kNotKnown;  ///< standard error, from the curvature at the best fit
+  double low68 = kNotKnown;
+  double high68 = kNotKnown;
+  double low95 = kNotKnown;
+  double high95 = kNotKnown;
+};
+
+/// How an analysis ended. Everything but `done` is an answer that the data cannot give.
+enum class Status {
+  done,
+  one_line,         ///< one line and no stated temperature: N(T) over a range is given, no temperature
+  not_thermal,      ///< the slope of the diagram is not negative: no temperature
+  only_limits,      ///< no line is detected
+  unbounded,        ///< a temperature, but outside the range for which the species has a Q(T)
+  not_converged
+};
+
+[[nodiscard]] const char* name_of(Status status);
+
+struct LineResult {
+  std::string transition;
+  double frequency_mhz = kNotKnown;
+  double upper_energy_k = kNotKnown;
+  double upper_degeneracy = kNotKnown;
+  double einstein_a_s1 = kNotKnown;
+  double intensity_k_km_s = kNotKnown;        ///< main-beam scale
+  double intensity_error_k_km_s = kNotKnown;  ///< without calibration
+  double calibration_error = 0.0;             ///< fraction
+  std::string calibration_group;              ///< empty: its own
+  bool limit = false;
+  std::string blend;  ///< empty where the line stands alone
+  double ln_nu_gu = kNotKnown;
+  double ln_nu_gu_error = kNotKnown;  ///< noise and calibration together
+  double optical_depth = kNotKnown;   ///< at line centre, where a width is known
+  double filling = 1.0;
+  double beam_fwhm_arcsec = kNotKnown;
+  double fwhm_km_s = kNotKnown;
+  double model_intensity_k_km_s = kNotKnown;
+  double residual_sigma = kNotKnown;  ///< (observed - model) / error; for a limit (limit - model) / error
+  bool used = true;
+  std::string why_unused;
+  std::size_t table_line = 0;  ///< line of the input table
+  std::string note;            ///< from the input table
+};
+
+enum class Outcome { pass, fail, not_testable };
+
+[[nodiscard]] const char* name_of(Outcome outcome);
+
+struct Check {
+  std::string name;
+  double figure = kNotKnown;
+  Outcome outcome = Outcome::not_testable;
+  std::string meaning;
+};
+
+/// The fitted line of the diagram, for figures: ln(N_u/g_u) = intercept - E_u / T, with its covariance.
+struct DiagramLine {
+  double intercept = kNotKnown;
+  double slope_per_k = kNotKnown;  ///< -1/T
+  double intercept_variance = kNotKnown;
+  double slope_variance = kNotKnown;
+  double covariance = kNotKnown;
+};
+
+struct ColumnAtTemperature {
+  double temperature_k = kNotKnown;
+  double column_density_cm2 = kNotKnown;
+  double error_cm2 = kNotKnown;
+};
+
+struct Provenance {
+  std::string version;
+  std::string table_file;
+  std::string table_fingerprint;
+  std::string species_file;
+  std::string species_fingerprint;
+  std::vector<std::string> data_sources;
+  std::string constants;
+  std::vector<std::pair<std::string, std::string>> options;  ///< every option in force, defaults included
+};
+
+/// One source and one species, analysed. What result.json holds, and what every output is made from.
+struct Result {
+  std::string source;
+  std::string species;
+  std::string formula;
+  std::string method;
+  Status status = Status::not_converged;
+  std::string message;  ///< for a status other than done: what can be said, in one or two sentences
+  bool temperature_fixed = false;
+  Estimate temperature_k;
+  Estimate column_density_cm2;
+  Estimate log10_column_density_cm2;
+  double correlation_ln_n_t = kNotKnown;
+  double chi2 = kNotKnown;
+  int dof = 0;
+  double p_value = kNotKnown;  ///< NaN where dof = 0
+  double partition_function = kNotKnown;
+  std::string partition_function_source;
+  double source_size_arcsec = kNotKnown;  ///< NaN: fills every beam
+  double background_k = 0.0;
+  DiagramLine diagram_line;
+  std::vector<LineResult> lines;
+  std::vector<ColumnAtTemperature> columns_at_temperatures;  ///< for Status::one_line
+  std::vector<Check> checks;
+  std::string verdict;
+  std::vector<std::string> warnings;
+  Provenance provenance;
+};
+
+}  // namespace trotline
