@@ -116,6 +116,9 @@ struct Result {
   std::string partition_function_source;
   double source_size_arcsec = kNotKnown;  ///< NaN: fills every beam
   double background_k = 0.0;
+  /// What the numbers rest on beside background, filling and Q, a phrase each: "LTE: one temperature for
+  /// every line", "optically thin lines".
+  std::vector<std::string> assumptions;
   DiagramLine diagram_line;
   std::vector<LineResult> lines;
   std::vector<ColumnAtTemperature> columns_at_temperatures;  ///< for Status::one_line
