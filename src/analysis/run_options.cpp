@@ -1,0 +1,214 @@
+#include <trotline/analysis/run_options.hpp>
+
+#include <fmt/format.h>
+
+#include <cmath>
+#include <numbers>
+
+#include <trotline/base/errors.hpp>
+#include <trotline/base/text.hpp>
+
+namespace trotline {
+namespace {
+
+constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
+
+std::string show_number(double value, const char* unit) {
+  return unit[0] == '\0' ? fmt::format("{:.10g}", value) : fmt::format("{:.10g} {}", value, unit);
+}
+
+
+double positive(const std::string& text, Dimension dimension) {
+  const double value = parse_quantity(text, dimension);
+  if (!(value > 0.0)) throw InputError({fmt::format("'{}' is not above zero", text), "a value above zero"});
+  return value;
+}
+
+double fraction(const std::string& text) {
+  const double value = parse_quantity(text, Dimension::dimensionless);
+  if (!(value > 0.0 && value <= 1.0)) {
+    throw InputError({fmt::format("'{}' is outside 0 to 1", text), "a fraction above 0 and up to 1, or percent"});
+  }
+  return value;
+}
+
+bool yes_or_no(const std::string& text) {
+  const std::string word = lower_case(trimmed(text));
+  if (word == "yes" || word == "true") return true;
+  if (word == "no" || word == "false") return false;
+  throw InputError({fmt::format("'{}' is neither yes nor no", printable(text)), "'yes' or 'no'"});
+}
+
+std::string one_of(const std::string& text, const std::vector<std::string>& words) {
+  const std::string word = lower_case(trimmed(text));
+  for (const std::string& allowed : words) {
+    if (word == allowed) return word;
+  }
+  throw InputError({fmt::format("there is no '{}'", printable(text)), "one of: " + listed(words),
+                    did_you_mean(text, words)});
+}
+
+/// "1-0, 2-1": labels hold commas only inside brackets.
+std::vector<std::string> split_labels(const std::string& text) {
+  std::vector<std::string> labels(1);
+  int depth = 0;
+  for (const char c : text) {
+    depth += (c == '(') - (c == ')');
+    if (c == ',' && depth == 0) {
+      labels.emplace_back();
+    } else {
+      labels.back() += c;
+    }
+  }
+  std::vector<std::string> kept;
+  for (const std::string& label : labels) {
+    if (!trimmed(label).empty()) kept.emplace_back(trimmed(label));
+  }
+  if (kept.empty()) throw InputError({"no label is given", "labels such as '1-0, 2-1'"});
+  return kept;
+}
+
+std::string joined(const std::vector<std::string>& labels) {
+  return labels.empty() ? "not given" : listed(labels, labels.size());
+}
+
+/// An option that is an optional double in an internal unit, shown in another.
+struct NumberOption {
+  std::string key, example, help;
+  Dimension dimension;
+  std::optional<double> RunOptions::*member;
+  double internal_per_shown;
+  const char* shown_unit;
+};
+
+RunOption make(const NumberOption& number) {
+  RunOption option{number.key, number.example, number.help, {}, {}};
+  option.set = [number](RunOptions& options, const std::string& text) {
+    options.*number.member = number.dimension == Dimension::dimensionless ? fraction(text)
+                                                                          : positive(text, number.dimension);
+    if (number.dimension == Dimension::velocity) *(options.*number.member) *= 1e-3;  // kept in km/s
+  };
+  option.show = [number](const RunOptions& options) {
+    const auto& value = options.*number.member;
+    return value ? show_number(*value / number.internal_per_shown, number.shown_unit) : std::string("not given");
+  };
+  return option;
+}
+
+RunOption make_range(const std::string& key, const std::string& example, const std::string& help,
+                     Dimension dimension, std::optional<QuantityRange> RunOptions::*member, double scale,
+                     const char* unit) {
+  return {key, example, help,
+          [=](RunOptions& options, const std::string& text) {
+            options.*member = parse_quantity_range(text, dimension);
+          },
+          [=](const RunOptions& options) {
+            const auto& range = options.*member;
+            return range ? fmt::format("{:.10g} {}..{:.10g} {}", range->low / scale, unit, range->high / scale, unit)
+                         : std::string("not given");
+          }};
+}
+
+RunOption make_labels(const std::string& key, const std::string& help,
+                      std::vector<std::string> RunOptions::*member) {
+  return {key, "1-0, 2-1", help,
+          [=](RunOptions& options, const std::string& text) { options.*member = split_labels(text); },
+          [=](const RunOptions& options) { return joined(options.*member); }};
+}
+
+void set_background(RunOptions& options, const std::string& text) {
+  options.background_k = parse_quantity(text, Dimension::temperature);
+  if (options.background_k < 0.0) {
+    throw InputError({fmt::format("'{}' is below zero", text), "a background of 0 K or more"});
+  }
+}
+
+void set_tolerance(RunOptions& options, const std::string& text) {
+  options.frequency_tolerance_hz = positive(text, Dimension::frequency);
+}
+
+void set_least_snr(RunOptions& options, const std::string& text) {
+  options.least_snr = parse_quantity(text, Dimension::dimensionless);
+  if (options.least_snr < 0.0) throw InputError({fmt::format("'{}' is below zero", text), "0 or more"});
+}
+
+std::vector<RunOption> make_table() {
+  std::vector<RunOption> table;
+  table.push_back({"method", "line", "how N and T are estimated",
+                   [](RunOptions& o, const std::string& text) { o.method = one_of(text, {"line"}); },
+                   [](const RunOptions& o) { return o.method; }});
+  table.push_back(make({"temperature", "45 K", "take this temperature and fit N only", Dimension::temperature,
+                        &RunOptions::temperature_k, 1.0, "K"}));
+  table.push_back({"background", "2.7255 K", "temperature of the background behind the lines; 0 K for none",
+                   set_background, [](const RunOptions& o) { return show_number(o.background_k, "K"); }});
+  table.push_back(make({"source_size", "8 arcsec", "size of the source, for beam filling; without it f = 1",
+                        Dimension::angle, &RunOptions::source_size_rad, kRadPerArcsec, "arcsec"}));
+  table.push_back({"source_shape", "gaussian", "gaussian (size is the FWHM) or disc (size is the diameter)",
+                   [](RunOptions& o, const std::string& text) {
+                     o.source_shape = one_of(text, {"gaussian", "disc"}) == "disc" ? SourceShape::disc
+                                                                                    : SourceShape::gaussian;
+                   },
+                   [](const RunOptions& o) {
+                     return std::string(o.source_shape == SourceShape::disc ? "disc" : "gaussian");
+                   }});
+  table.push_back(make({"beam", "27 arcsec", "FWHM of the beam, for rows that give none", Dimension::angle,
+                        &RunOptions::beam_fwhm_rad, kRadPerArcsec, "arcsec"}));
+  table.push_back(make({"line_width", "3.2 km/s", "FWHM of the lines, for rows that give none; for opacities",
+                        Dimension::velocity, &RunOptions::fwhm_km_s, 1.0, "km/s"}));
+  table.push_back(make({"calibration_error", "10 %", "calibration error, for rows that give none",
+                        Dimension::dimensionless, &RunOptions::calibration_error, 1.0, ""}));
+  table.push_back({"calibration_shared", "yes", "rows without a calibration group share one factor: yes or no",
+                   [](RunOptions& o, const std::string& text) { o.calibration_shared = yes_or_no(text); },
+                   [](const RunOptions& o) { return std::string(o.calibration_shared ? "yes" : "no"); }});
+  table.push_back(make({"forward_efficiency", "0.95", "for antenna temperatures in rows that give none",
+                        Dimension::dimensionless, &RunOptions::forward_efficiency, 1.0, ""}));
+  table.push_back(make({"main_beam_efficiency", "0.78", "for antenna temperatures in rows that give none",
+                        Dimension::dimensionless, &RunOptions::main_beam_efficiency, 1.0, ""}));
+  table.push_back(make_labels("only", "fit these transitions only", &RunOptions::only_lines));
+  table.push_back(make_labels("without", "leave these transitions out", &RunOptions::without_lines));
+  table.push_back(make_range("upper_energy", "0 K..300 K", "fit lines with E_u/k in this range only",
+                             Dimension::temperature, &RunOptions::upper_energy_k, 1.0, "K"));
+  table.push_back(make_range("frequency", "80 GHz..116 GHz", "fit lines in this range only", Dimension::frequency,
+                             &RunOptions::frequency_hz, 1e9, "GHz"));
+  table.push_back({"least_snr", "3", "leave out lines with W/sigma below this", set_least_snr,
+                   [](const RunOptions& o) { return show_number(o.least_snr, ""); }});
+  table.push_back({"frequency_tolerance", "0.5 MHz", "how far a frequency in the table may be off", set_tolerance,
+                   [](const RunOptions& o) { return show_number(o.frequency_tolerance_hz / 1e6, "MHz"); }});
+  table.push_back({"source", "NAME", "which source of a table that holds several",
+                   [](RunOptions& o, const std::string& text) { o.source = text; },
+                   [](const RunOptions& o) { return o.source ? *o.source : std::string("not given"); }});
+  return table;
+}
+
+}  // namespace
+
+const std::vector<RunOption>& run_option_table() {
+  static const std::vector<RunOption> table = make_table();
+  return table;
+}
+
+void set_run_option(RunOptions& options, const std::string& key, const std::string& value) {
+  std::vector<std::string> keys;
+  for (const RunOption& option : run_option_table()) {
+    keys.push_back(option.key);
+    if (option.key != key) continue;
+    try {
+      option.set(options, value);
+    } catch (const InputError& error) {
+      const Complaint& complaint = error.complaint();
+      throw InputError(Place{}, {key + ": " + complaint.found, complaint.expected,
+                                 complaint.advice.empty() ? "" : complaint.advice});
+    }
+    return;
+  }
+  throw InputError({fmt::format("there is no option '{}'", printable(key)), "one of: " + listed(keys, keys.size()),
+                    did_you_mean(key, keys)});
+}
+
+std::vector<std::pair<std::string, std::string>> shown(const RunOptions& options) {
+  std::vector<std::pair<std::string, std::string>> pairs;
+  for (const RunOption& option : run_option_table()) pairs.emplace_back(option.key, option.show(options));
+  return pairs;
+}
+
+}  // namespace trotline

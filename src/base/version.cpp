@@ -1,0 +1,7 @@
+#include <trotline/base/version.hpp>
+
+namespace trotline {
+
+const char* version() { return TROTLINE_VERSION; }
+
+}  // namespace trotline
