@@ -24,10 +24,10 @@ struct Estimate {
 /// How an analysis ended. Everything but `done` is an answer that the data cannot give.
 enum class Status {
   done,
-  one_line,         ///< one line and no stated temperature: N(T) over a range is given, no temperature
-  not_thermal,      ///< the slope of the diagram is not negative: no temperature
-  only_limits,      ///< no line is detected
-  unbounded,        ///< a temperature, but outside the range for which the species has a Q(T)
+  one_line,     ///< one line and no stated temperature: N(T) over a range is given, no temperature
+  not_thermal,  ///< the slope of the diagram is not negative: no temperature
+  only_limits,  ///< no line is detected
+  unbounded,    ///< a temperature, but outside the range for which the species has a Q(T)
   not_converged
 };
 

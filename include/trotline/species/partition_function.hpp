@@ -38,39 +38,61 @@ class PartitionFunction {
   [[nodiscard]] virtual std::string description() const = 0;
 };
 
-/// A vibrational mode that multiplies Q by (1 - exp(-hc omega/kT))^(-degeneracy).
+/// A vibrational mode that multiplies Q by (1 - exp(-hc omega/kT))^(-degeneracy): harmonic, and with the
+/// rotational levels of the ground state in every excited one.
 struct VibrationalMode {
-  double energy_k = 0.0;  ///< hc omega / k [K]
-  int degeneracy = 1;
+  double energy_k = 0.0;  ///< hc omega / k [K], > 0
+  int degeneracy = 1;     ///< > 0
+};
+
+/// Whether there are levels beyond those listed.
+enum class LevelList {
+  truncated,  ///< yes: a molecule, of which only the lower levels are known
+  complete    ///< no: these are all, e.g. the fine structure of an atom well below its next term
 };
 
 /// Direct sum over levels, times harmonic vibrational factors.
 ///
-/// relative_error estimates the part of the sum that lies above the last level, from the growth of g over
-/// the last levels; highest_k() is where it reaches kMostTruncation, or `highest_k` if that is lower.
-/// @param levels  at least one, energies finite and >= 0, degeneracies > 0
+/// relative_error estimates the part of the sum that lies above the last level: the number of states is
+/// taken to go on growing as the power of energy with which it grew over the upper half of the list.
+/// highest_k() is where the estimate reaches kMostTruncation, or `highest_k` if that is lower. The estimate
+/// knows nothing of levels that are missing below the last one, and of anharmonicity.
+/// @param levels  at least one, in any order; energies finite and >= 0, degeneracies finite and > 0
+/// @param highest_k  [K], > kLowestTemperatureK
 /// @throws DomainError naming level and value
 [[nodiscard]] std::shared_ptr<const PartitionFunction> partition_function_from_levels(
-    const std::vector<Level>& levels, std::vector<VibrationalMode> modes = {}, double highest_k = 1e5);
+    const std::vector<Level>& levels, std::vector<VibrationalMode> modes = {}, double highest_k = 1e5,
+    LevelList list = LevelList::truncated);
 
 inline constexpr double kMostTruncation = 1e-2;
 
-/// A table of (T, Q), interpolated monotonically in ln T - ln(Q / T^(d/2)).
+/// Lowest temperature at which a sum over levels can be asked for [K].
+inline constexpr double kLowestTemperatureK = 1e-3;
+
+/// A table of (T, Q), interpolated by a cubic that never overshoots, in ln T - ln Q.
 ///
-/// @param points  at least 3, T rising, Q > 0 and not falling
-/// @param rotational_degrees_of_freedom  d: 2 for a linear species, 3 otherwise
-/// relative_error comes from leaving out every second point; it is large for wide tables at low T.
+/// Slopes follow Steffen 1990, A&A 239, 443: those of the parabola through three points, limited so that Q
+/// never falls. Such a cubic reproduces straight lines, so dividing Q by T^(d/2) first, d being the number of
+/// rotational degrees of freedom, would change nothing.
+/// relative_error in an interval is the error that the interpolation makes when the nearest inner points are
+/// left out, each in its turn: the worse of the two ends. Leaving a point out doubles the step, so the
+/// estimate is a cautious one; it is large for wide tables at low T. The rounding of the table adds to it.
+/// @param points  (T [K], Q): at least 5, T > 0 and rising, Q > 0 and not falling
 /// @throws DomainError naming the offending point
 [[nodiscard]] std::shared_ptr<const PartitionFunction> partition_function_from_table(
-    std::vector<std::pair<double, double>> points, int rotational_degrees_of_freedom);
+    const std::vector<std::pair<double, double>>& points);
 
 /// How one Q relates to another over the temperatures that both can give.
 struct PartitionComparison {
-  double constant_factor = 1.0;  ///< median of ratio first / second
-  double spread = 0.0;           ///< largest |ratio / constant_factor - 1|
+  double constant_factor = 1.0;  ///< median of ratio first / second; NaN when no temperature is left
+  double spread = 0.0;           ///< largest |ratio / constant_factor - 1|; NaN when no temperature is left
   std::vector<std::pair<double, double>> ratios;  ///< (T, first / second)
-  bool is_difference_of_convention = false;       ///< factor is not 1, but constant: spins counted otherwise
+
+  /// The factor is not 1 within kSameConvention, but constant within it: spins are counted otherwise.
+  bool is_difference_of_convention = false;
 };
+
+inline constexpr double kSameConvention = 0.02;
 
 /// @param temperatures_k  where to compare; those outside either range are left out
 [[nodiscard]] PartitionComparison compare(const PartitionFunction& first, const PartitionFunction& second,
