@@ -142,7 +142,8 @@ QuantityRange parse_quantity_range(std::string_view text, Dimension dimension) {
   }
   std::string low(trimmed(text.substr(0, dots)));
   const std::string high(trimmed(text.substr(dots + 2)));
-  if (parse_number(low) && dimension != Dimension::dimensionless) low += " " + std::string(split(high).unit);
+  if (parse_number(low) && dimension != Dimension::dimensionless)
+    low = fmt::format("{} {}", low, split(high).unit);
   const QuantityRange range{parse_quantity(low, dimension), parse_quantity(high, dimension)};
   if (!(range.low < range.high)) {
     throw InputError({fmt::format("the range '{}' is empty", printable(text)), "the lower value first"});

@@ -1,5 +1,7 @@
 #include <trotline/rotor/linear.hpp>
 
+#include <fmt/format.h>
+
 #include <cmath>
 
 #include <trotline/base/errors.hpp>
@@ -62,6 +64,26 @@ std::vector<LinearLine> linear_lines(const LinearConstants& constants, const Lin
     lines.push_back({j, frequency_hz, einstein_a_per_s(frequency_hz, j * mu_c_m * mu_c_m, 2.0 * j + 1.0)});
   }
   return lines;
+}
+
+RotorModel linear_model(const LinearConstants& constants, const LinearDipole& dipole, const SpinRule& spin,
+                        const RotorOptions& options) {
+  require_valid(options);
+  const int highest_j = linear_highest_j(constants, options.highest_j);
+  RotorModel draft;
+  if (highest_j < options.highest_j) {
+    draft.warnings.push_back(
+        fmt::format("the distortion series stops rising at J = {}; levels above are left out", highest_j));
+  }
+  for (int j = 0; j <= highest_j; ++j) {
+    draft.levels.push_back({{static_cast<std::int16_t>(j)}, linear_energy_hz(constants, j), 2.0 * j + 1.0});
+    if (j == 0) continue;
+    const double mu_c_m = dipole.at(j);
+    const auto upper = static_cast<std::uint32_t>(j);
+    draft.transitions.push_back({upper, upper - 1, 0.0, j * mu_c_m * mu_c_m, 0.0});
+  }
+  draft.complete_to_hz = draft.levels.back().energy_hz;
+  return finished_model(std::move(draft), spin, options);
 }
 
 }  // namespace trotline

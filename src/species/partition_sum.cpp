@@ -6,11 +6,14 @@
 #include <algorithm>
 #include <boost/math/special_functions/gamma.hpp>
 #include <cmath>
+#include <limits>
 #include <numeric>
 
 #include <fmt/format.h>
 
 #include <trotline/base/errors.hpp>
+
+#include "level_compression.hpp"
 
 namespace trotline {
 namespace {
@@ -58,17 +61,12 @@ class LevelSum final : public PartitionFunction {
   LevelSum(const std::vector<Level>& levels, std::vector<VibrationalMode> modes, double highest_k,
            LevelList list)
       : modes_(std::move(modes)), highest_k_(highest_k) {
-    sort_in(levels);
-    const double states = degeneracies_.sum();
+    levels_ = sorted(levels);
     // Everything beyond adds less than (sum of g) exp(-cut) = g_0 exp(-40), under 1e-17 of Q.
-    cut_ = 40.0 + std::log(states / degeneracies_[0]);
-    const double half = 0.5 * last_energy();
-    double states_below_half = 0.0;
-    for (Eigen::Index i = 0; i < energies_.size() && energies_[i] <= half; ++i)
-      states_below_half += degeneracies_[i];
-    grows_ = list == LevelList::truncated && last_energy() > 0.0;
-    if (grows_) {
-      growth_ = std::clamp(std::log2(states / states_below_half), 0.5, 6.0);
+    cut_ = 40.0 + std::log(states() / levels_.degeneracies[0]);
+    compress();
+    if (list == LevelList::truncated && last_energy() > 0.0) {
+      growth_ = growth();
       find_highest_temperature();
     }
   }
@@ -85,7 +83,8 @@ class LevelSum final : public PartitionFunction {
   [[nodiscard]] double highest_k() const override { return highest_k_; }
 
   [[nodiscard]] std::string description() const override {
-    std::string text = fmt::format("sum over {} level{}", energies_.size(), energies_.size() == 1 ? "" : "s");
+    std::string text = fmt::format("sum over {} level{}", levels_.energies_k.size(),
+                                   levels_.energies_k.size() == 1 ? "" : "s");
     if (!modes_.empty()) {
       text += fmt::format(" times {} vibrational mode{}", modes_.size(), modes_.size() == 1 ? "" : "s");
     }
@@ -98,34 +97,54 @@ class LevelSum final : public PartitionFunction {
     double qe = 0.0;  ///< sum of g E exp(-x)
   };
 
-  void sort_in(const std::vector<Level>& levels) {
+  static LevelArrays sorted(const std::vector<Level>& levels) {
     std::vector<std::size_t> order(levels.size());
     std::iota(order.begin(), order.end(), std::size_t{0});
     std::stable_sort(order.begin(), order.end(),
                      [&](std::size_t a, std::size_t b) { return levels[a].energy_k < levels[b].energy_k; });
-    energies_.resize(static_cast<Eigen::Index>(levels.size()));
-    degeneracies_.resize(energies_.size());
-    for (Eigen::Index i = 0; i < energies_.size(); ++i) {
+    const auto n = static_cast<Eigen::Index>(levels.size());
+    LevelArrays arrays{Eigen::ArrayXd(n), Eigen::ArrayXd(n)};
+    for (Eigen::Index i = 0; i < n; ++i) {
       const Level& level = levels[order[static_cast<std::size_t>(i)]];
-      energies_[i] = level.energy_k;
-      degeneracies_[i] = level.degeneracy;
+      arrays.energies_k[i] = level.energy_k;
+      arrays.degeneracies[i] = level.degeneracy;
     }
+    return arrays;
   }
 
-  [[nodiscard]] double last_energy() const { return energies_[energies_.size() - 1]; }
+  /// Long lists are thinned out for high temperatures, into windows of about a dozen levels.
+  void compress() {
+    constexpr Eigen::Index kLongList = 1000;
+    const Eigen::Index n = levels_.energies_k.size();
+    if (n < kLongList || last_energy() <= 0.0) return;
+    const double width_k = 12.0 * last_energy() / static_cast<double>(n);
+    thinned_ = compressed(levels_, width_k);
+    thinned_from_k_ = kTemperatureOverWindow * width_k;
+  }
+
+  [[nodiscard]] double last_energy() const { return levels_.energies_k[levels_.energies_k.size() - 1]; }
+  [[nodiscard]] double states() const { return levels_.degeneracies.sum(); }
+
+  /// The power of energy with which the number of states grows over the upper half of the list.
+  [[nodiscard]] double growth() const {
+    const auto below_half = (levels_.energies_k <= 0.5 * last_energy());
+    return std::clamp(std::log2(states() / below_half.select(levels_.degeneracies, 0.0).sum()), 0.5, 6.0);
+  }
 
   /// In blocks that stay in the cache; the order of the terms is always the same.
   [[nodiscard]] Sums sums(double temperature_k) const {
     constexpr Eigen::Index kBlock = 512;
-    const double* const begin = energies_.data();
-    const Eigen::Index n = std::upper_bound(begin, begin + energies_.size(), cut_ * temperature_k) - begin;
+    const LevelArrays& levels = temperature_k >= thinned_from_k_ ? thinned_ : levels_;
+    const double* const begin = levels.energies_k.data();
+    const double* const end = begin + levels.energies_k.size();
+    const Eigen::Index n = std::upper_bound(begin, end, cut_ * temperature_k) - begin;
     const double minus_beta = -1.0 / temperature_k;
     Eigen::Array<double, Eigen::Dynamic, 1, 0, kBlock, 1> term;
     Sums sums;
     for (Eigen::Index first = 0; first < n; first += kBlock) {
       const Eigen::Index length = std::min(kBlock, n - first);
-      const auto energy = energies_.segment(first, length);
-      term = degeneracies_.segment(first, length) * (energy * minus_beta).exp();
+      const auto energy = levels.energies_k.segment(first, length);
+      term = levels.degeneracies.segment(first, length) * (energy * minus_beta).exp();
       sums.q += term.sum();
       sums.qe += (term * energy).sum();
     }
@@ -147,8 +166,8 @@ class LevelSum final : public PartitionFunction {
   /// G_last s x^-s Gamma(s, x) with x = E_last/T.
   [[nodiscard]] double tail(double temperature_k) const {
     const double x = last_energy() / temperature_k;
-    if (!grows_ || x > 700.0) return 0.0;
-    return degeneracies_.sum() * growth_ * std::pow(x, -growth_) * boost::math::tgamma(growth_, x);
+    if (growth_ == 0.0 || x > 700.0) return 0.0;
+    return states() * growth_ * std::pow(x, -growth_) * boost::math::tgamma(growth_, x);
   }
 
   /// The truncation rises with T: halve the interval in ln T.
@@ -163,13 +182,13 @@ class LevelSum final : public PartitionFunction {
     highest_k_ = std::max(std::exp(low), kLowestTemperatureK);
   }
 
-  Eigen::ArrayXd energies_;
-  Eigen::ArrayXd degeneracies_;
+  LevelArrays levels_;
+  LevelArrays thinned_;  ///< stands for levels_ from thinned_from_k_ on
+  double thinned_from_k_ = std::numeric_limits<double>::infinity();
   std::vector<VibrationalMode> modes_;
   double highest_k_;
   double cut_ = 0.0;
-  double growth_ = 1.0;
-  bool grows_ = false;
+  double growth_ = 0.0;  ///< 0: there is nothing beyond the last level
 };
 
 }  // namespace

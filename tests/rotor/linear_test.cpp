@@ -105,6 +105,35 @@ TEST(LinearRotor, LevelsAreCutWhereTheSeriesTurnsOver) {
   EXPECT_EQ(linear_lines(constants, {}, 49).size(), 49u);
 }
 
+TEST(LinearRotor, ModelHoldsTheSameLevelsAndLines) {
+  RotorOptions options;
+  options.highest_j = 30;
+  const RotorModel model = linear_model(kCo, kCoDipole, *make_spin_rule({}), options);
+  const auto lines = linear_lines(kCo, kCoDipole, 30);
+  ASSERT_EQ(model.levels.size(), 31u);
+  ASSERT_EQ(model.transitions.size(), lines.size());
+  EXPECT_TRUE(model.warnings.empty());
+  EXPECT_EQ(model.complete_to_hz, linear_energy_hz(kCo, 30));
+  for (std::size_t i = 0; i < lines.size(); ++i) {
+    const RotorTransition& line = model.transitions[i];
+    EXPECT_EQ(line.upper, i + 1);
+    EXPECT_EQ(line.lower, i);
+    EXPECT_EQ(model.levels[line.upper].degeneracy(), 2.0 * static_cast<double>(i) + 3.0);
+    // A difference of two energies loses their ratio to it, 15 at J = 30.
+    EXPECT_NEAR(line.frequency_hz / lines[i].frequency_hz, 1.0, 1e-14);
+    EXPECT_NEAR(line.einstein_a_per_s / lines[i].einstein_a_per_s, 1.0, 1e-13);
+  }
+}
+
+TEST(LinearRotor, ModelSaysWhereTheSeriesTurnsOver) {
+  RotorOptions options;
+  options.highest_j = 80;
+  const RotorModel model = linear_model({10e9, 10e9 / 5000.0, 0.0, 0.0}, {}, *make_spin_rule({}), options);
+  EXPECT_EQ(model.levels.size(), 50u);
+  ASSERT_EQ(model.warnings.size(), 1u);
+  EXPECT_NE(model.warnings[0].find("J = 49"), std::string::npos) << model.warnings[0];
+}
+
 TEST(LinearRotor, RefusesConstantsThatMakeNoRotor) {
   const double nan = std::numeric_limits<double>::quiet_NaN();
   EXPECT_THROW((void)linear_highest_j({0.0, 0.0, 0.0, 0.0}, 5), DomainError);

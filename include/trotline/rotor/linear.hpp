@@ -2,6 +2,9 @@
 
 #include <vector>
 
+#include <trotline/rotor/rotor.hpp>
+#include <trotline/rotor/spin.hpp>
+
 namespace trotline {
 
 /// Constants of a linear rotor without electronic spin, in frequency units [Hz].
@@ -57,5 +60,11 @@ struct LinearLine {
 /// @throws DomainError  as linear_highest_j, and if the energies stop rising below highest_j
 [[nodiscard]] std::vector<LinearLine> linear_lines(const LinearConstants& constants,
                                                    const LinearDipole& dipole, int highest_j);
+
+/// Levels and lines in the form that all rotors share; cut at the J where the energies stop rising, with a
+/// warning, if that is below options.highest_j.
+/// @throws DomainError  as linear_highest_j, and for options outside their domain
+[[nodiscard]] RotorModel linear_model(const LinearConstants& constants, const LinearDipole& dipole,
+                                      const SpinRule& spin, const RotorOptions& options);
 
 }  // namespace trotline
