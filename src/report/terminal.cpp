@@ -1,0 +1,387 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+#include <trotline/report/display_text.hpp>
+#include <trotline/report/rounding.hpp>
+#include <trotline/report/terminal.hpp>
+#include <trotline/report/text_table.hpp>
+#include <trotline/report/typeset.hpp>
+
+namespace trotline {
+namespace {
+
+constexpr std::size_t kLabelWidth = 10;  // "  assumes " and its like
+constexpr std::size_t kLeastWidth = 40;
+constexpr std::size_t kWidthForBars = 72;
+constexpr std::size_t kWidthForModel = 60;
+constexpr std::size_t kWidthForEnergy = 50;
+constexpr double kStriking = 3.0;  // residuals beyond it are coloured
+
+const char* const kBold = "\x1b[1m";
+const char* const kDim = "\x1b[2m";
+const char* const kRed = "\x1b[31m";
+const char* const kYellow = "\x1b[33m";
+
+/// Collects the lines of the report; the only place that knows width and colour.
+class Page {
+ public:
+  explicit Page(const TerminalOptions& options)
+      : options_(options), width_(std::max(options.width, kLeastWidth)) {}
+
+  [[nodiscard]] std::size_t width() const { return width_; }
+  [[nodiscard]] Glyphs glyphs() const { return options_.unicode ? Glyphs::unicode : Glyphs::ascii; }
+  [[nodiscard]] const char* pick(const char* unicode, const char* ascii) const {
+    return options_.unicode ? unicode : ascii;
+  }
+
+  void line(const std::string& text, const char* style = "") {
+    text_ += styled(shortened(text, width_, !options_.unicode), style) + "\n";
+  }
+  void blank() { text_ += "\n"; }
+
+  void heading(const std::string& text) {
+    blank();
+    line(text, kBold);
+  }
+
+  /// "  label   text", the text wrapped with a hanging indent.
+  void entry(const std::string& label, const std::string& text, const char* style = "") {
+    std::string start = padded_right("  " + label, kLabelWidth);
+    for (const std::string& piece : wrapped(text, width_ - kLabelWidth)) {
+      text_ += styled(start, kDim) + styled(piece, style) + "\n";
+      start.assign(kLabelWidth, ' ');
+    }
+  }
+
+  /// "  - text" with a mark in front.
+  void item(const std::string& mark, const std::string& text, const char* style = "") {
+    const std::size_t indent = 3 + display_width(mark);
+    std::string start = "  " + mark + " ";
+    for (const std::string& piece : wrapped(text, width_ - indent)) {
+      text_ += styled(start + piece, style) + "\n";
+      start.assign(indent, ' ');
+    }
+  }
+
+  [[nodiscard]] std::string text() const { return text_; }
+
+ private:
+  [[nodiscard]] std::string styled(const std::string& text, const char* style) const {
+    return options_.colour && *style != '\0' ? style + text + "\x1b[0m" : text;
+  }
+
+  TerminalOptions options_;
+  std::size_t width_;
+  std::string text_;
+};
+
+std::string with_unit(const std::string& number, const std::string& unit) {
+  return number == "not known" || number == "no bound" ? number : number + " " + unit;
+}
+
+std::string species_of(const Result& result, const Page& page) {
+  const std::string formula = display_text(result.formula.empty() ? result.species : result.formula);
+  return page.glyphs() == Glyphs::unicode ? typeset_formula(formula) : formula;
+}
+
+std::string transition_of(const std::string& label, const Page& page) {
+  const std::string text = display_text(label);
+  return page.glyphs() == Glyphs::unicode ? typeset_transition(text) : text;
+}
+
+void add_title(Page& page, const Result& result) {
+  const std::string source = display_text(result.source);
+  page.line(species_of(result, page) + (source.empty() ? "" : " toward " + source), kBold);
+  page.blank();
+}
+
+void add_ranges(Page& page, const Estimate& estimate, const std::string& unit) {
+  const auto range = [&](double low, double high) {
+    return with_unit(rounded_interval(low, high, estimate.error, page.glyphs()), unit);
+  };
+  page.entry("", "68 %  " + range(estimate.low68, estimate.high68) + "    95 %  " +
+                     range(estimate.low95, estimate.high95));
+}
+
+void add_estimates(Page& page, const Result& result) {
+  const Estimate& t = result.temperature_k;
+  const Estimate& n = result.column_density_cm2;
+  const Estimate& log_n = result.log10_column_density_cm2;
+  const char* const per_area = page.pick("cm⁻²", "cm^-2");
+  if (result.temperature_fixed) {
+    page.entry("T", value_with_error(t.value, 0.0, page.glyphs()) + " K, stated and not fitted", kBold);
+  } else {
+    page.entry("T_rot", with_unit(value_with_error(t.value, t.error, page.glyphs()), "K"), kBold);
+    add_ranges(page, t, "K");
+  }
+  page.entry("N_tot", with_unit(value_with_error(n.value, n.error, page.glyphs()), per_area), kBold);
+  add_ranges(page, n, per_area);
+  page.entry("log10 N", value_with_error(log_n.value, log_n.error, page.glyphs()));
+}
+
+std::string p_value_text(double p, const Page& page) {
+  if (p == 0.0) return page.pick("p < 10⁻³⁰⁰", "p < 1e-300");
+  if (p >= 0.01) return fmt::format("p = {:.2f}", p);
+  return "p = " + significant(p, 1, page.glyphs());
+}
+
+std::string scatter_text(double p) {
+  constexpr double kSmall = 0.05;
+  constexpr double kLarge = 0.95;
+  if (p < kSmall) return ": the lines scatter more than their errors allow";
+  if (p > kLarge) return ": the lines scatter less than their errors say";
+  return ": the scatter is what the errors allow";
+}
+
+void add_goodness(Page& page, const Result& result) {
+  if (std::isnan(result.chi2)) return;
+  if (result.dof <= 0) {
+    page.entry("fit", "no degree of freedom left: nothing can be said of the goodness of fit");
+    return;
+  }
+  std::string text =
+      fmt::format("{} = {} with {} degree{} of freedom", page.pick("χ²", "chi2"),
+                  significant(result.chi2, 3, page.glyphs()), result.dof, result.dof == 1 ? "" : "s");
+  if (!std::isnan(result.p_value))
+    text += ", " + p_value_text(result.p_value, page) + scatter_text(result.p_value);
+  page.entry("fit", text);
+  if (!std::isnan(result.correlation_ln_n_t)) {
+    page.entry("",
+               "correlation of ln N and T: " + fixed_decimals(result.correlation_ln_n_t, 2, page.glyphs()));
+  }
+}
+
+std::string filling_text(const Result& result, const Page& page) {
+  if (std::isnan(result.source_size_arcsec)) return "the source fills every beam";
+  const auto [least, most] =
+      std::minmax_element(result.lines.begin(), result.lines.end(),
+                          [](const LineResult& a, const LineResult& b) { return a.filling < b.filling; });
+  std::string text = fmt::format("source size {} arcsec", value_with_error(result.source_size_arcsec, 0.0));
+  if (least == result.lines.end()) return text;
+  return text + fmt::format(" (beam filling {} to {})", significant(least->filling, 2, page.glyphs()),
+                            significant(most->filling, 2, page.glyphs()));
+}
+
+std::string opacity_text(const Result& result, const Page& page) {
+  const LineResult* most = nullptr;
+  for (const LineResult& line : result.lines) {
+    if (!std::isnan(line.optical_depth) && (!most || line.optical_depth > most->optical_depth)) most = &line;
+  }
+  if (!most) return {};
+  return fmt::format("; largest {} {} ({})", page.pick("τ", "tau"),
+                     significant(most->optical_depth, 2, page.glyphs()),
+                     transition_of(most->transition, page));
+}
+
+void add_assumptions(Page& page, const Result& result) {
+  std::string text;
+  for (const std::string& assumption : result.assumptions) text += display_text(assumption) + "; ";
+  text += fmt::format("background {} K; {}", value_with_error(result.background_k, 0.0, page.glyphs()),
+                      filling_text(result, page));
+  page.entry("assumes", text + opacity_text(result, page));
+  if (!std::isnan(result.partition_function)) {
+    const std::string source = display_text(result.partition_function_source);
+    page.entry("Q", fmt::format("Q({} K) = {}{}", significant(result.temperature_k.value, 3, page.glyphs()),
+                                significant(result.partition_function, 4, page.glyphs()),
+                                source.empty() ? "" : ", " + source));
+  }
+  if (!result.method.empty()) page.entry("method", display_text(result.method));
+}
+
+std::string headline(Status status) {
+  switch (status) {
+    case Status::done:
+      return {};
+    case Status::one_line:
+      return "One line only: no temperature. N for a range of temperatures:";
+    case Status::not_thermal:
+      return "No temperature: ln(N_u/g_u) does not fall with E_u.";
+    case Status::only_limits:
+      return "No line is detected: no temperature and no column density.";
+    case Status::unbounded:
+      return "The temperature lies outside the range for which Q(T) is known.";
+    case Status::not_converged:
+      return "The fit did not converge: there is no result.";
+  }
+  return {};
+}
+
+void add_slope(Page& page, const DiagramLine& line) {
+  if (!std::isfinite(line.slope_per_k)) return;
+  const double error = std::sqrt(line.slope_variance);
+  std::string text = value_with_error(line.slope_per_k, error, page.glyphs()) + " per K";
+  if (error > 0.0) {
+    text +=
+        fmt::format(", {} errors {} zero", significant(std::abs(line.slope_per_k) / error, 2, page.glyphs()),
+                    line.slope_per_k < 0.0 ? "below" : "above");
+  }
+  page.entry("slope", text);
+}
+
+void add_columns_at_temperatures(Page& page, const Result& result) {
+  if (result.columns_at_temperatures.empty()) return;
+  TextColumn temperature{"T [K]", {}};
+  TextColumn column{page.pick("N [cm⁻²]", "N [cm^-2]"), {}, false};
+  for (const ColumnAtTemperature& row : result.columns_at_temperatures) {
+    temperature.cells.push_back(value_with_error(row.temperature_k, 0.0, page.glyphs()));
+    column.cells.push_back(value_with_error(row.column_density_cm2, row.error_cm2, page.glyphs()));
+  }
+  for (const std::string& line :
+       text_table({temperature, column}, page.width() - kLabelWidth, page.glyphs())) {
+    page.line(std::string(kLabelWidth, ' ') + line);
+  }
+}
+
+void add_answer(Page& page, const Result& result) {
+  if (result.status != Status::done) page.line("  " + headline(result.status), kYellow);
+  const std::string message = display_text(result.message);
+  if (!message.empty()) page.entry("", message);
+  const bool has_numbers =
+      std::isfinite(result.temperature_k.value) || std::isfinite(result.column_density_cm2.value);
+  if (result.status == Status::done || has_numbers) add_estimates(page, result);
+  if (result.status == Status::one_line) add_columns_at_temperatures(page, result);
+  if (result.status == Status::not_thermal || result.status == Status::unbounded) {
+    add_slope(page, result.diagram_line);
+  }
+  add_goodness(page, result);
+  const std::string verdict = display_text(result.verdict);
+  if (!verdict.empty()) page.entry("verdict", verdict);
+}
+
+std::string observed_text(const LineResult& line, const Page& page) {
+  if (line.limit) return "< " + significant(line.intensity_k_km_s, 3, page.glyphs());
+  return value_with_error(line.intensity_k_km_s, line.intensity_error_k_km_s, page.glyphs());
+}
+
+/// The model to the decimals of the error beside which it stands.
+std::string model_text(const LineResult& line, const Page& page) {
+  const double model = line.model_intensity_k_km_s;
+  if (!std::isfinite(model)) return page.pick("–", "-");
+  const std::string pair = value_with_error(model, line.intensity_error_k_km_s, page.glyphs());
+  const bool plain = pair.front() != '(' && line.intensity_error_k_km_s > 0.0;
+  return plain ? pair.substr(0, pair.find(' ')) : significant(model, 3, page.glyphs());
+}
+
+bool is_broken(const LineResult& line) { return line.limit && line.residual_sigma < 0.0; }
+
+std::string mark_of(const LineResult& line) {
+  if (line.limit) return is_broken(line) ? "limit !" : "limit";
+  return line.blend.empty() ? "" : "blend " + shortened(display_text(line.blend), 8, true);
+}
+
+std::string signed_residual(double residual, const Page& page) {
+  const std::string text = fixed_decimals(residual, 1, page.glyphs());
+  return residual > 0.0 && text != "0.0" ? "+" + text : text;
+}
+
+std::vector<TextColumn> columns_of(const std::vector<const LineResult*>& lines, const Page& page) {
+  TextColumn transition{"line", {}, false};
+  TextColumn energy{"E_u [K]", {}};
+  TextColumn observed{"W [K km/s]", {}};
+  TextColumn model{"model", {}};
+  TextColumn residual{page.pick("(o−m)/σ", "(o-m)/s"), {}};
+  TextColumn bar{page.pick("−5   0   +5", "-5   0   +5"), {}, false};
+  TextColumn mark{"", {}, false};
+  for (const LineResult* line : lines) {
+    transition.cells.push_back(transition_of(line->transition, page));
+    energy.cells.push_back(fixed_decimals(line->upper_energy_k, 1, page.glyphs()));
+    observed.cells.push_back(observed_text(*line, page));
+    model.cells.push_back(model_text(*line, page));
+    residual.cells.push_back(signed_residual(line->residual_sigma, page));
+    bar.cells.push_back(residual_bar(line->residual_sigma, page.glyphs()));
+    mark.cells.push_back(mark_of(*line));
+  }
+  std::vector<TextColumn> columns = {transition};
+  if (page.width() >= kWidthForEnergy) columns.push_back(energy);
+  columns.push_back(observed);
+  if (page.width() >= kWidthForModel) columns.push_back(model);
+  columns.push_back(residual);
+  if (page.width() >= kWidthForBars) columns.push_back(bar);
+  columns.push_back(mark);
+  return columns;
+}
+
+void add_lines(Page& page, const Result& result) {
+  std::vector<const LineResult*> shown;
+  for (const LineResult& line : result.lines) {
+    if (line.used || line.limit) shown.push_back(&line);
+  }
+  if (shown.empty()) return;
+  page.blank();
+  const auto rows = text_table(columns_of(shown, page), page.width() - 2, page.glyphs());
+  page.line("  " + rows.front(), kDim);
+  for (std::size_t i = 1; i < rows.size(); ++i) {
+    const double residual = shown[i - 1]->residual_sigma;
+    const bool striking = shown[i - 1]->limit ? is_broken(*shown[i - 1]) : std::abs(residual) > kStriking;
+    page.line("  " + rows[i], striking ? kRed : "");
+  }
+  if (std::any_of(shown.begin(), shown.end(), [](const LineResult* line) { return is_broken(*line); })) {
+    page.line("  limit !: the model lies above the limit", kDim);
+  }
+}
+
+void add_unused(Page& page, const Result& result) {
+  bool first = true;
+  for (const LineResult& line : result.lines) {
+    if (line.used || (line.limit && line.why_unused.empty())) continue;
+    if (first) page.heading("Not used");
+    first = false;
+    const std::string where = line.table_line > 0 ? fmt::format(" (table line {})", line.table_line) : "";
+    const std::string why = display_text(line.why_unused);
+    page.item("-",
+              transition_of(line.transition, page) + where + ": " + (why.empty() ? "no reason given" : why),
+              kDim);
+  }
+}
+
+void add_checks(Page& page, const Result& result) {
+  if (result.checks.empty()) return;
+  page.heading("Checks");
+  for (const Check& check : result.checks) {
+    const bool failed = check.outcome == Outcome::fail;
+    std::string text = std::string(name_of(check.outcome)) + ": " + display_text(check.name);
+    if (std::isfinite(check.figure)) text += " " + significant(check.figure, 2, page.glyphs());
+    const std::string meaning = display_text(check.meaning);
+    if (!meaning.empty()) text += page.pick(" – ", " - ") + meaning;
+    page.item(failed ? "!" : check.outcome == Outcome::pass ? "+" : "?", text, failed ? kRed : "");
+  }
+}
+
+void add_warnings(Page& page, const Result& result) {
+  if (result.warnings.empty()) return;
+  page.heading("Warnings");
+  for (const std::string& warning : result.warnings) page.item("!", display_text(warning), kYellow);
+}
+
+void add_provenance(Page& page, const Result& result) {
+  const Provenance& from = result.provenance;
+  std::string text;
+  const auto add = [&](const std::string& piece) {
+    if (!piece.empty()) text += (text.empty() ? "" : "; ") + display_text(piece);
+  };
+  add(from.table_file);
+  add(from.species_file);
+  add(from.constants.empty() ? "" : "constants " + from.constants);
+  add(from.version.empty() ? "" : "trotline " + from.version);
+  page.blank();
+  if (!text.empty()) page.entry("from", text, kDim);
+}
+
+}  // namespace
+
+std::string terminal_report(const Result& result, const TerminalOptions& options) {
+  Page page(options);
+  add_title(page, result);
+  add_answer(page, result);
+  add_assumptions(page, result);
+  add_lines(page, result);
+  add_unused(page, result);
+  add_checks(page, result);
+  add_warnings(page, result);
+  add_provenance(page, result);
+  return page.text();
+}
+
+}  // namespace trotline
