@@ -1,0 +1,127 @@
+#include <nlohmann/json.hpp>
+
+#include <trotline/report/json.hpp>
+
+namespace trotline {
+namespace {
+
+using Json = nlohmann::ordered_json;  // the keys in the order of the contract
+
+Json json_of(const Estimate& estimate) {
+  return {{"value", estimate.value},   {"error", estimate.error}, {"low68", estimate.low68},
+          {"high68", estimate.high68}, {"low95", estimate.low95}, {"high95", estimate.high95}};
+}
+
+Json json_of(const LineResult& line) {
+  Json json;
+  json["transition"] = line.transition;
+  json["frequency_mhz"] = line.frequency_mhz;
+  json["upper_energy_k"] = line.upper_energy_k;
+  json["upper_degeneracy"] = line.upper_degeneracy;
+  json["einstein_a_s1"] = line.einstein_a_s1;
+  json["intensity_k_km_s"] = line.intensity_k_km_s;
+  json["intensity_error_k_km_s"] = line.intensity_error_k_km_s;
+  json["calibration_error"] = line.calibration_error;
+  json["calibration_group"] = line.calibration_group;
+  json["limit"] = line.limit;
+  json["blend"] = line.blend;
+  json["ln_nu_gu"] = line.ln_nu_gu;
+  json["ln_nu_gu_error"] = line.ln_nu_gu_error;
+  json["optical_depth"] = line.optical_depth;
+  json["filling"] = line.filling;
+  json["beam_fwhm_arcsec"] = line.beam_fwhm_arcsec;
+  json["fwhm_km_s"] = line.fwhm_km_s;
+  json["model_intensity_k_km_s"] = line.model_intensity_k_km_s;
+  json["residual_sigma"] = line.residual_sigma;
+  json["used"] = line.used;
+  json["why_unused"] = line.why_unused;
+  json["table_line"] = line.table_line;
+  json["note"] = line.note;
+  return json;
+}
+
+Json json_of(const Check& check) {
+  return {{"name", check.name},
+          {"figure", check.figure},
+          {"outcome", name_of(check.outcome)},
+          {"meaning", check.meaning}};
+}
+
+Json json_of(const DiagramLine& line) {
+  return {{"intercept", line.intercept},
+          {"slope_per_k", line.slope_per_k},
+          {"intercept_variance", line.intercept_variance},
+          {"slope_variance", line.slope_variance},
+          {"covariance", line.covariance}};
+}
+
+Json json_of(const ColumnAtTemperature& row) {
+  return {{"temperature_k", row.temperature_k},
+          {"column_density_cm2", row.column_density_cm2},
+          {"error_cm2", row.error_cm2}};
+}
+
+Json json_of(const Provenance& provenance) {
+  Json options = Json::object();
+  for (const auto& [name, value] : provenance.options) options[name] = value;
+  return {{"version", provenance.version},
+          {"table_file", provenance.table_file},
+          {"table_fingerprint", provenance.table_fingerprint},
+          {"species_file", provenance.species_file},
+          {"species_fingerprint", provenance.species_fingerprint},
+          {"data_sources", provenance.data_sources},
+          {"constants", provenance.constants},
+          {"options", options}};
+}
+
+template <class Item>
+Json list_of(const std::vector<Item>& items) {
+  Json list = Json::array();
+  for (const Item& item : items) list.push_back(json_of(item));
+  return list;
+}
+
+void add_answer(Json& json, const Result& result) {
+  json["status"] = name_of(result.status);
+  json["message"] = result.message;
+  json["converged"] = result.status == Status::done;
+  json["temperature_fixed"] = result.temperature_fixed;
+  json["temperature_k"] = json_of(result.temperature_k);
+  json["log10_column_density_cm2"] = json_of(result.log10_column_density_cm2);
+  json["column_density_cm2"] = json_of(result.column_density_cm2);
+  json["correlation_lnN_T"] = result.correlation_ln_n_t;
+  json["chi2"] = result.chi2;
+  json["dof"] = result.dof;
+  json["p_value"] = result.p_value;
+}
+
+void add_basis(Json& json, const Result& result) {
+  json["partition_function"] = {{"value", result.partition_function},
+                                {"source", result.partition_function_source}};
+  json["source_size_arcsec"] = result.source_size_arcsec;
+  json["background_k"] = result.background_k;
+  json["assumptions"] = result.assumptions;
+  json["diagram_line"] = json_of(result.diagram_line);
+}
+
+}  // namespace
+
+std::string result_json(const Result& result) {
+  Json json;
+  json["schema"] = kResultSchema;
+  json["source"] = result.source;
+  json["species"] = result.species;
+  json["formula"] = result.formula;
+  json["method"] = result.method;
+  add_answer(json, result);
+  add_basis(json, result);
+  json["columns_at_temperatures"] = list_of(result.columns_at_temperatures);
+  json["lines"] = list_of(result.lines);
+  json["checks"] = list_of(result.checks);
+  json["verdict"] = result.verdict;
+  json["warnings"] = result.warnings;
+  json["provenance"] = json_of(result.provenance);
+  return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+}
+
+}  // namespace trotline
