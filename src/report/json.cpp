@@ -1,11 +1,9 @@
-#include <nlohmann/json.hpp>
-
 #include <trotline/report/json.hpp>
+
+#include "json_document.hpp"
 
 namespace trotline {
 namespace {
-
-using Json = nlohmann::ordered_json;  // the keys in the order of the contract
 
 Json json_of(const Estimate& estimate) {
   return {{"value", estimate.value},   {"error", estimate.error}, {"low68", estimate.low68},
@@ -106,7 +104,7 @@ void add_basis(Json& json, const Result& result) {
 
 }  // namespace
 
-std::string result_json(const Result& result) {
+Json result_document(const Result& result) {
   Json json;
   json["schema"] = kResultSchema;
   json["source"] = result.source;
@@ -121,7 +119,11 @@ std::string result_json(const Result& result) {
   json["verdict"] = result.verdict;
   json["warnings"] = result.warnings;
   json["provenance"] = json_of(result.provenance);
-  return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+  return json;
+}
+
+std::string result_json(const Result& result) {
+  return result_document(result).dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
 }
 
 }  // namespace trotline
