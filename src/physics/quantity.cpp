@@ -46,6 +46,14 @@ const Kind& kind_of(Dimension dimension) { return kKinds.at(static_cast<std::siz
                     fmt::format("{} such as '{}'", name_of(dimension), example_of(dimension))});
 }
 
+/// wcslib takes powers through logarithms, so that 1000 may come back as 1000.0000000000001: a factor within
+/// a few units in the last place of a power of ten is that power.
+double cleaned(double scale) {
+  const double power_of_ten = std::pow(10.0, std::round(std::log10(scale)));
+  const bool is_rounding = std::abs(scale / power_of_ten - 1.0) < 8.0 * std::numeric_limits<double>::epsilon();
+  return is_rounding ? power_of_ten : scale;
+}
+
 /// wcslib's conversion factor, or nothing when either unit is unknown or the two do not agree.
 std::optional<double> wcslib_scale(std::string_view have, const char* want) {
   constexpr std::size_t kWcslibUnitLength = 71;  // wcsutrn() needs room in a buffer of 72 characters
@@ -60,7 +68,7 @@ std::optional<double> wcslib_scale(std::string_view have, const char* want) {
   double power = 1.0;
   if (wcsunits(buffer.data(), want, &scale, &offset, &power) != 0) return std::nullopt;
   if (offset != 0.0 || power != 1.0 || !(scale > 0.0) || !std::isfinite(scale)) return std::nullopt;
-  return scale;
+  return cleaned(scale);
 }
 
 /// Units that the standard names but wcslib scales otherwise, or that trade usage adds.
