@@ -21,13 +21,15 @@ std::string reason_of(int status) {
 }  // namespace
 
 FitsFile::FitsFile(std::string_view bytes, std::string name)
-    : buffer_(const_cast<char*>(bytes.data())),  // opened read-only
-      size_(bytes.size()),
+    : structure_(fits_structure(bytes, name)),
+      buffer_(const_cast<char*>(bytes.data())),  // opened read-only
       name_(std::move(name)) {
-  constexpr std::size_t kBlock = 2880;
-  if (size_ < kBlock) {
-    throw InputError(Place{name_},
-                     {fmt::format("holds {} bytes", size_), "a FITS file, of 2880 bytes at least"});
+  const FitsUnit& last = structure_.back();
+  size_ = (last.data_start + last.data_bytes + kFitsBlock - 1) / kFitsBlock * kFitsBlock;
+  if (size_ > bytes.size()) {  // CFITSIO reads whole blocks, whatever size it is told
+    padded_.assign(bytes);
+    padded_.resize(size_);
+    buffer_ = padded_.data();
   }
   int status = 0;
   // The name is fixed because CFITSIO would read brackets in a user's file name as instructions.
@@ -47,35 +49,12 @@ void FitsFile::check(int status, const std::string& action) const {
   throw InputError(Place{name_}, {fmt::format("{}: {}", action, reason_of(status)), "a complete FITS file"});
 }
 
-int FitsFile::units() const {
-  int status = 0;
-  int number = 0;
-  fits_get_num_hdus(file_, &number, &status);
-  check(status, "its header-and-data units cannot be counted");
-  return number;
-}
-
 int FitsFile::go_to(int number) const {
   int status = 0;
   int type = 0;
   fits_movabs_hdu(file_, number, &type, &status);
   check(status, fmt::format("extension {} cannot be read", number - 1));
   return type;
-}
-
-void FitsFile::require_complete_data(const std::string& what) const {
-  int status = 0;
-  LONGLONG start = 0;
-  LONGLONG data = 0;
-  LONGLONG end = 0;
-  fits_get_hduaddrll(file_, &start, &data, &end, &status);
-  check(status, what + " cannot be read");
-  // The padding of the last block may be missing: no number is lost with it.
-  constexpr LONGLONG kPadding = 2879;
-  if (end - kPadding <= static_cast<LONGLONG>(size_)) return;
-  throw InputError(
-      Place{name_},
-      {fmt::format("{} ends at byte {} but the file has only {}", what, end, size_), "a complete FITS file"});
 }
 
 }  // namespace trotline

@@ -9,12 +9,14 @@
 #include <string_view>
 #include <vector>
 
+#include "fits_structure.hpp"
+
 namespace trotline {
 
 class FitsFile {
  public:
   /// Opens the bytes of a whole file, which must outlive this object. @param name  for messages
-  /// @throws InputError when they do not begin like FITS
+  /// @throws InputError when their structure is not that of a FITS file
   FitsFile(std::string_view bytes, std::string name);
   ~FitsFile();
   FitsFile(const FitsFile&) = delete;
@@ -22,22 +24,23 @@ class FitsFile {
 
   [[nodiscard]] fitsfile* handle() const { return file_; }
   [[nodiscard]] const std::string& name() const { return name_; }
-  [[nodiscard]] std::size_t size() const { return size_; }
 
   /// Throws InputError naming the file, what could not be done and CFITSIO's reason, unless status is 0.
   void check(int status, const std::string& action) const;
 
   /// Number of header-and-data units.
-  [[nodiscard]] int units() const;
+  [[nodiscard]] int units() const { return static_cast<int>(structure_.size()); }
 
   /// Makes unit `number` (from 1) the current one and returns its type, IMAGE_HDU, ASCII_TBL or BINARY_TBL.
   int go_to(int number) const;
 
-  /// Refuses a current unit whose data end beyond the end of the file.
-  void require_complete_data(const std::string& what) const;
+  /// The units as fits_structure() found them.
+  [[nodiscard]] const std::vector<FitsUnit>& structure() const { return structure_; }
 
  private:
   fitsfile* file_ = nullptr;
+  std::vector<FitsUnit> structure_;
+  std::string padded_;  ///< a copy filled up to whole blocks, where the bytes are not
   void* buffer_;
   std::size_t size_;
   std::string name_;
