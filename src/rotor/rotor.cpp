@@ -1,6 +1,8 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <bit>
+#include <boost/sort/spreadsort/integer_sort.hpp>
 #include <cmath>
 
 #include <trotline/base/errors.hpp>
@@ -77,6 +79,14 @@ bool comes_first(const RotorTransition& x, const RotorTransition& y) {
   return x.upper != y.upper ? x.upper < y.upper : x.lower < y.lower;
 }
 
+/// A radix sort, as positive frequencies are ordered as their bits are: there may be millions of lines.
+void sort_by_frequency(std::vector<RotorTransition>& lines) {
+  const auto bits = [](const RotorTransition& line, unsigned offset) {
+    return std::bit_cast<std::uint64_t>(line.frequency_hz) >> offset;
+  };
+  boost::sort::spreadsort::integer_sort(lines.begin(), lines.end(), bits, comes_first);
+}
+
 }  // namespace
 
 std::string label_of(const QuantumNumbers& q) {
@@ -110,7 +120,7 @@ RotorModel finished_model(RotorModel draft, const SpinRule& spin, const RotorOpt
   apply_spin(draft.levels, spin);
   const auto place = settle_levels(draft.levels, options.highest_energy_hz);
   settle_lines(draft.transitions, draft.levels, place, options);
-  std::sort(draft.transitions.begin(), draft.transitions.end(), comes_first);
+  sort_by_frequency(draft.transitions);
   draft.complete_to_hz = std::min(draft.complete_to_hz, options.highest_energy_hz);
   return draft;
 }
