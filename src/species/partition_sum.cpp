@@ -58,15 +58,15 @@ VibrationalFactor vibrational_factor(const std::vector<VibrationalMode>& modes, 
 
 class LevelSum final : public PartitionFunction {
  public:
-  LevelSum(const std::vector<Level>& levels, std::vector<VibrationalMode> modes, double highest_k,
-           LevelList list)
-      : modes_(std::move(modes)), highest_k_(highest_k) {
-    levels_ = sorted(levels);
+  LevelSum(const std::vector<Level>& levels, const LevelSumOptions& options)
+      : levels_(sorted(levels)), modes_(options.modes), highest_k_(options.highest_k) {
     // Everything beyond adds less than (sum of g) exp(-cut) = g_0 exp(-40), under 1e-17 of Q.
     cut_ = 40.0 + std::log(states() / levels_.degeneracies[0]);
     compress();
-    if (list == LevelList::truncated && last_energy() > 0.0) {
-      growth_ = growth();
+    complete_to_k_ = options.complete_to_k.value_or(last_energy());
+    if (std::isfinite(complete_to_k_) && complete_to_k_ > 0.0) {
+      complete_states_ = states_up_to(complete_to_k_);
+      growth_ = std::clamp(std::log2(complete_states_ / states_up_to(0.5 * complete_to_k_)), 0.5, 6.0);
       find_highest_temperature();
     }
   }
@@ -125,10 +125,8 @@ class LevelSum final : public PartitionFunction {
   [[nodiscard]] double last_energy() const { return levels_.energies_k[levels_.energies_k.size() - 1]; }
   [[nodiscard]] double states() const { return levels_.degeneracies.sum(); }
 
-  /// The power of energy with which the number of states grows over the upper half of the list.
-  [[nodiscard]] double growth() const {
-    const auto below_half = (levels_.energies_k <= 0.5 * last_energy());
-    return std::clamp(std::log2(states() / below_half.select(levels_.degeneracies, 0.0).sum()), 0.5, 6.0);
+  [[nodiscard]] double states_up_to(double energy_k) const {
+    return (levels_.energies_k <= energy_k).select(levels_.degeneracies, 0.0).sum();
   }
 
   /// In blocks that stay in the cache; the order of the terms is always the same.
@@ -162,12 +160,12 @@ class LevelSum final : public PartitionFunction {
     return value;
   }
 
-  /// Number of states G(E) = G_last (E/E_last)^s beyond the last level: the integral of dG exp(-E/T) is
-  /// G_last s x^-s Gamma(s, x) with x = E_last/T.
+  /// Number of states G(E) = G_c (E/E_c)^s beyond E_c, up to which the list is complete: the integral of
+  /// dG exp(-E/T) is G_c s x^-s Gamma(s, x) with x = E_c/T.
   [[nodiscard]] double tail(double temperature_k) const {
-    const double x = last_energy() / temperature_k;
+    const double x = complete_to_k_ / temperature_k;
     if (growth_ == 0.0 || x > 700.0) return 0.0;
-    return states() * growth_ * std::pow(x, -growth_) * boost::math::tgamma(growth_, x);
+    return complete_states_ * growth_ * std::pow(x, -growth_) * boost::math::tgamma(growth_, x);
   }
 
   /// The truncation rises with T: halve the interval in ln T.
@@ -188,20 +186,24 @@ class LevelSum final : public PartitionFunction {
   std::vector<VibrationalMode> modes_;
   double highest_k_;
   double cut_ = 0.0;
-  double growth_ = 0.0;  ///< 0: there is nothing beyond the last level
+  double complete_to_k_ = 0.0;
+  double complete_states_ = 0.0;
+  double growth_ = 0.0;  ///< 0: no level is missing
 };
 
 }  // namespace
 
 std::shared_ptr<const PartitionFunction> partition_function_from_levels(const std::vector<Level>& levels,
-                                                                        std::vector<VibrationalMode> modes,
-                                                                        double highest_k, LevelList list) {
+                                                                        const LevelSumOptions& options) {
   check_levels(levels);
-  check_modes(modes);
-  if (!(std::isfinite(highest_k) && highest_k > kLowestTemperatureK)) {
-    throw DomainError("highest_k", highest_k, fmt::format("above {:g} K", kLowestTemperatureK));
+  check_modes(options.modes);
+  if (!(std::isfinite(options.highest_k) && options.highest_k > kLowestTemperatureK)) {
+    throw DomainError("highest_k", options.highest_k, fmt::format("above {:g} K", kLowestTemperatureK));
   }
-  return std::make_shared<LevelSum>(levels, std::move(modes), highest_k, list);
+  if (options.complete_to_k && !(*options.complete_to_k > 0.0)) {
+    throw DomainError("complete_to_k", *options.complete_to_k, "above 0 K");
+  }
+  return std::make_shared<LevelSum>(levels, options);
 }
 
 }  // namespace trotline

@@ -34,7 +34,7 @@ void thousand_temperatures(benchmark::State& state, const PartitionFunction& par
 
 void LevelSumAtThousandTemperatures(benchmark::State& state) {
   const auto levels = rotor_levels(static_cast<std::size_t>(state.range(0)));
-  thousand_temperatures(state, *partition_function_from_levels(levels, {}, 1e4, LevelList::complete));
+  thousand_temperatures(state, *partition_function_from_levels(levels));
 }
 BENCHMARK(LevelSumAtThousandTemperatures)->Arg(100)->Arg(10000)->Arg(100000)->Unit(benchmark::kMillisecond);
 

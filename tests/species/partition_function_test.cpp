@@ -26,11 +26,19 @@ std::vector<Level> rigid_linear_rotor(double b_k, int highest_j) {
   return levels;
 }
 
+/// Options of a list from which no level is missing.
+LevelSumOptions complete_list(double highest_k) {
+  LevelSumOptions options;
+  options.highest_k = highest_k;
+  options.complete_to_k = std::numeric_limits<double>::infinity();
+  return options;
+}
+
 // ---- sums over levels
 
 TEST(LevelSum, TwoLevelsFollowTheClosedForm) {
-  const auto partition = partition_function_from_levels({{"1", 20.0, 3.0, ""}, {"0", 0.0, 2.0, ""}}, {}, 1e4,
-                                                        LevelList::complete);
+  const auto partition =
+      partition_function_from_levels({{"1", 20.0, 3.0, ""}, {"0", 0.0, 2.0, ""}}, complete_list(1e4));
   for (const double t : {1e-3, 0.5, 3.0, 20.0, 300.0, 1e4}) {
     const double upper = 3.0 * std::exp(-20.0 / t);
     const PartitionValue value = partition->at(t);
@@ -55,7 +63,7 @@ TEST(LevelSum, LinearRotorAgreesWithTheEulerMaclaurinExpansion) {
 
 TEST(LevelSum, SlopeIsTheDerivativeOfLnQ) {
   const auto partition =
-      partition_function_from_levels(rigid_linear_rotor(2.766, 120), {{600.0, 2}, {1500.0, 1}});
+      partition_function_from_levels(rigid_linear_rotor(2.766, 120), {.modes = {{600.0, 2}, {1500.0, 1}}});
   for (const double t : {3.0, 10.0, 50.0, 300.0, 900.0}) {
     const double step = 1e-4 * t;
     const double slope = (partition->at(t + step).ln_q - partition->at(t - step).ln_q) / (2.0 * step);
@@ -66,7 +74,7 @@ TEST(LevelSum, SlopeIsTheDerivativeOfLnQ) {
 TEST(LevelSum, VibrationMultipliesByTheHarmonicProduct) {
   const auto levels = rigid_linear_rotor(2.0, 120);
   const auto rotation = partition_function_from_levels(levels);
-  const auto both = partition_function_from_levels(levels, {{600.0, 2}, {1500.0, 1}});
+  const auto both = partition_function_from_levels(levels, {.modes = {{600.0, 2}, {1500.0, 1}}});
   for (const double t : {10.0, 150.0, 300.0, 1000.0}) {
     const double product = std::pow(1.0 - std::exp(-600.0 / t), -2) / (1.0 - std::exp(-1500.0 / t));
     EXPECT_NEAR(both->at(t).q / rotation->at(t).q / product, 1.0, 1e-14) << t;
@@ -80,7 +88,7 @@ TEST(LevelSum, LeavingOutHighLevelsAndThinningChangesNothing) {
   std::uniform_real_distribution<double> energy(0.0, 1e4);
   levels.push_back({"0", 0.0, 1.0, ""});
   for (int i = 0; i < 100000; ++i) levels.push_back({"", energy(random), 1.0 + i % 7, ""});
-  const auto partition = partition_function_from_levels(levels, {}, 1e4, LevelList::complete);
+  const auto partition = partition_function_from_levels(levels, complete_list(1e4));
   for (const double t : {0.05, 1.0, 17.99, 18.01, 30.0, 1000.0}) {
     long double q = 0.0L;
     for (const Level& level : levels)
@@ -109,8 +117,22 @@ TEST(LevelSum, RefusesTemperaturesWhereTooMuchIsCutOff) {
   EXPECT_THROW((void)cut->at(0.0), DomainError);
   EXPECT_THROW((void)cut->at(-5.0), DomainError);
   EXPECT_THROW((void)cut->at(std::numeric_limits<double>::quiet_NaN()), DomainError);
-  EXPECT_THROW((void)partition_function_from_levels(rigid_linear_rotor(1.0, 30), {}, 50.0)->at(51.0),
-               DomainError);
+  EXPECT_THROW(
+      (void)partition_function_from_levels(rigid_linear_rotor(1.0, 30), {.highest_k = 50.0})->at(51.0),
+      DomainError);
+}
+
+TEST(LevelSum, EstimatesTruncationFromWhereLevelsBeginToMiss) {
+  std::vector<Level> levels = rigid_linear_rotor(1.0, 30);
+  levels.push_back({"60", 3660.0, 121.0, ""});  // one more, far above a gap
+  LevelSumOptions options;
+  options.complete_to_k = 930.0;
+  const auto partition = partition_function_from_levels(levels, options);
+  const auto without = partition_function_from_levels(rigid_linear_rotor(1.0, 30));
+  EXPECT_NEAR(partition->highest_k() / without->highest_k(), 1.0, 1e-4);
+  EXPECT_GT(partition_function_from_levels(levels)->highest_k(), 2.0 * without->highest_k());
+  options.complete_to_k = 0.0;
+  EXPECT_THROW((void)partition_function_from_levels(levels, options), DomainError);
 }
 
 TEST(LevelSum, MeanEnergyStaysFiniteAtTheLowestTemperature) {
@@ -124,8 +146,10 @@ TEST(LevelSum, MeanEnergyStaysFiniteAtTheLowestTemperature) {
 TEST(LevelSum, NamesTheLevelThatIsWrong) {
   const double nan = std::numeric_limits<double>::quiet_NaN();
   EXPECT_THROW((void)partition_function_from_levels({}), DomainError);
-  EXPECT_THROW((void)partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {{-5.0, 1}}), DomainError);
-  EXPECT_THROW((void)partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {{5.0, 0}}), DomainError);
+  EXPECT_THROW((void)partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {.modes = {{-5.0, 1}}}),
+               DomainError);
+  EXPECT_THROW((void)partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {.modes = {{5.0, 0}}}),
+               DomainError);
   for (const Level& bad :
        {Level{"2(1)", -1.0, 1.0, ""}, Level{"2(1)", nan, 1.0, ""}, Level{"2(1)", 5.0, 0.0, ""}}) {
     try {
@@ -139,7 +163,7 @@ TEST(LevelSum, NamesTheLevelThatIsWrong) {
 
 TEST(LevelSum, SaysWhatItIs) {
   EXPECT_EQ(partition_function_from_levels(rigid_linear_rotor(2.0, 10))->description(), "sum over 11 levels");
-  EXPECT_EQ(partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {{900.0, 1}})->description(),
+  EXPECT_EQ(partition_function_from_levels({{"0", 0.0, 1.0, ""}}, {.modes = {{900.0, 1}}})->description(),
             "sum over 1 level times 1 vibrational mode");
 }
 
@@ -269,7 +293,7 @@ TEST(PartitionComparison, FindsAConstantFactor) {
 
 TEST(PartitionComparison, TellsVibrationFromConvention) {
   const auto rotation = partition_function_from_levels(rigid_linear_rotor(2.0, 60));
-  const auto both = partition_function_from_levels(rigid_linear_rotor(2.0, 60), {{500.0, 2}});
+  const auto both = partition_function_from_levels(rigid_linear_rotor(2.0, 60), {.modes = {{500.0, 2}}});
   const auto comparison = compare(*both, *rotation, {10.0, 75.0, 150.0, 225.0, 300.0});
   EXPECT_GT(comparison.spread, 0.3);  // (1 - exp(-500/300))^-2 = 1.54 against 1.15 at 150 K
   EXPECT_FALSE(comparison.is_difference_of_convention);

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <memory>
+#include <optional>
 #include <string>
 #include <utility>
 #include <vector>
@@ -45,24 +46,26 @@ struct VibrationalMode {
   int degeneracy = 1;     ///< > 0
 };
 
-/// Whether there are levels beyond those listed.
-enum class LevelList {
-  truncated,  ///< yes: a molecule, of which only the lower levels are known
-  complete    ///< no: these are all, e.g. the fine structure of an atom well below its next term
+/// What a sum over levels is to know besides the levels.
+struct LevelSumOptions {
+  std::vector<VibrationalMode> modes = {};
+  double highest_k = 1e5;  ///< no temperature above can be asked for [K]; > kLowestTemperatureK
+
+  /// No level is missing below this energy [K]; > 0. Without it: below the last level. Infinity: the levels
+  /// are all there are, e.g. the fine structure of an atom well below its next term.
+  std::optional<double> complete_to_k = std::nullopt;
 };
 
 /// Direct sum over levels, times harmonic vibrational factors.
 ///
-/// relative_error estimates the part of the sum that lies above the last level: the number of states is
-/// taken to go on growing as the power of energy with which it grew over the upper half of the list.
-/// highest_k() is where the estimate reaches kMostTruncation, or `highest_k` if that is lower. The estimate
-/// knows nothing of levels that are missing below the last one, and of anharmonicity.
+/// relative_error estimates the part of the sum that is missing above complete_to_k: the number of states
+/// is taken to go on growing as the power of energy with which it grew over the upper half of what is
+/// complete. highest_k() is where the estimate reaches kMostTruncation, or options.highest_k if that is
+/// lower. The estimate knows nothing of anharmonicity.
 /// @param levels  at least one, in any order; energies finite and >= 0, degeneracies finite and > 0
-/// @param highest_k  [K], > kLowestTemperatureK
 /// @throws DomainError naming level and value
 [[nodiscard]] std::shared_ptr<const PartitionFunction> partition_function_from_levels(
-    const std::vector<Level>& levels, std::vector<VibrationalMode> modes = {}, double highest_k = 1e5,
-    LevelList list = LevelList::truncated);
+    const std::vector<Level>& levels, const LevelSumOptions& options = {});
 
 inline constexpr double kMostTruncation = 1e-2;
 
