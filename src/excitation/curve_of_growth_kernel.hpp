@@ -1,7 +1,6 @@
 // The inner part of the curve of growth: no branch, no allocation, so that loops over lines vectorise.
 #pragma once
 
-#include <array>
 #include <bit>
 #include <cstdint>
 
@@ -24,18 +23,18 @@ inline Saturation gaussian_saturation(double tau0) {
   constexpr std::uint64_t kOne = std::uint64_t{1023} << kFractionBits;
   constexpr std::uint64_t kRestMask = (std::uint64_t{1} << (kFractionBits - 2)) - 1;
   const auto bits = std::bit_cast<std::uint64_t>(1.0 + tau0);
-  const std::uint64_t quarter = (bits - kOne) >> (kFractionBits - 2);
+  const auto quarter = static_cast<std::int64_t>((bits - kOne) >> (kFractionBits - 2));
   const double rest = std::bit_cast<double>((bits & kRestMask) | kOne);  // in [1, 1.25)
   const double s = (rest - 1.125) * 8.0;
   // ds/dtau = 8 / 2^exponent
   const double inverse_octave = std::bit_cast<double>((std::uint64_t{2046} << kFractionBits) -
                                                       ((bits >> kFractionBits) << kFractionBits));
-  const double* c = generated::kSaturation[quarter];
-  double value = c[generated::kSaturationDegree];
+  double value = generated::kSaturation[generated::kSaturationDegree][quarter];
   double slope = 0.0;
+#pragma GCC unroll 10
   for (int k = generated::kSaturationDegree - 1; k >= 0; --k) {
     slope = slope * s + value;
-    value = value * s + c[k];
+    value = value * s + generated::kSaturation[k][quarter];
   }
   return {value, slope * 8.0 * inverse_octave};
 }

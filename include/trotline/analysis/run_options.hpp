@@ -6,12 +6,11 @@
 #include <utility>
 #include <vector>
 
+#include <trotline/excitation/thin_line.hpp>
 #include <trotline/physics/constants.hpp>
 #include <trotline/physics/quantity.hpp>
 
 namespace trotline {
-
-enum class SourceShape { gaussian, disc };
 
 /// Everything that a person may set about the analysis of one source and species. SI inside.
 struct RunOptions {

@@ -32,6 +32,12 @@ struct LineConstants {
 [[nodiscard]] double background_contrast_slope_k(double frequency_hz, double excitation_temperature_k,
                                                  double background_k);
 
+/// The shape of a source: what its size means, and how it fills a beam.
+enum class SourceShape {
+  gaussian,  ///< size is the FWHM
+  disc       ///< size is the diameter of a uniform disc
+};
+
 /// Beam filling factor of a Gaussian source in a Gaussian beam: theta_s^2 / (theta_s^2 + theta_b^2).
 ///
 /// Any one unit for both angles. An infinite source gives 1.

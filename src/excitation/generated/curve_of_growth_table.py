@@ -55,19 +55,17 @@ def quarter(octave, part):
     return monomials(chebyshev)
 
 
-rows = []
-for octave in range(OCTAVES):
-    for part in range(QUARTERS):
-        rows.append("    {" + ", ".join(mp.nstr(c, 17) for c in quarter(octave, part)) + "},")
+quarters = [quarter(octave, part) for octave in range(OCTAVES) for part in range(QUARTERS)]
+# One row per power of s: neighbouring lines gather from one row.
+rows = ["    {" + ", ".join(mp.nstr(c[power], 17) for c in quarters) + "}," for power in range(DEGREE + 1)]
 
 pathlib.Path("curve_of_growth_table.hpp").write_text(
     "// Written by curve_of_growth_table.py beside this file; do not edit.\n"
     "#pragma once\n\n"
     "namespace trotline::generated {\n\n"
     "// clang-format off\n"
-    f"inline constexpr int kSaturationOctaves = {OCTAVES};\n"
     f"inline constexpr int kSaturationDegree = {DEGREE};\n"
-    f"inline constexpr double kSaturation[{OCTAVES * QUARTERS}][{DEGREE + 1}] = {{\n" + "\n".join(rows) + "\n};\n"
+    f"inline constexpr double kSaturation[{DEGREE + 1}][{OCTAVES * QUARTERS}] = {{\n" + "\n".join(rows) + "\n};\n"
     "// clang-format on\n\n"
     "}  // namespace trotline::generated\n"
 )
