@@ -15,6 +15,15 @@ std::string_view first_line_of_content(std::string_view text) {
   return line ? line->text : std::string_view{};
 }
 
+raw::Table parse_as(TableFormat format, std::string_view bytes, const std::string& name) {
+  if (format == TableFormat::fits) return raw::parse_fits(bytes, name);
+  return raw::parse_text(format, raw::checked_text(bytes, name), name);
+}
+
+}  // namespace
+
+namespace raw {
+
 TableFormat recognised(std::string_view bytes) {
   if (bytes.starts_with("SIMPLE  =")) return TableFormat::fits;
   if (bytes.starts_with("\xEF\xBB\xBF")) bytes.remove_prefix(3);
@@ -34,22 +43,20 @@ void refuse_other_formats(std::string_view bytes, const std::string& name) {
     refuse("an XML file", "VOTable is not read; save it as ECSV");
 }
 
-raw::Table parse_as(TableFormat format, std::string_view bytes, const std::string& name) {
-  if (format == TableFormat::fits) return raw::parse_fits(bytes, name);
-  const std::string_view text = raw::checked_text(bytes, name);
-  if (format == TableFormat::ecsv) return raw::parse_ecsv(text, name);
-  return format == TableFormat::csv ? raw::parse_csv(text, name) : raw::parse_words(text, name);
+Table parse_text(TableFormat format, std::string_view text, const std::string& file) {
+  if (format == TableFormat::ecsv) return parse_ecsv(text, file);
+  return format == TableFormat::csv ? parse_csv(text, file) : parse_words(text, file);
 }
 
-}  // namespace
+}  // namespace raw
 
 IntensityTable parse_intensity_table(std::string_view bytes, const std::string& name, TableFormat format) {
   if (bytes.size() > kLargestTable) {
     throw InputError(Place{name}, {fmt::format("holds {} bytes", bytes.size()),
                                    fmt::format("a table of at most {} bytes", kLargestTable)});
   }
-  refuse_other_formats(bytes, name);
-  if (format == TableFormat::automatic) format = recognised(bytes);
+  raw::refuse_other_formats(bytes, name);
+  if (format == TableFormat::automatic) format = raw::recognised(bytes);
   return raw::interpret(parse_as(format, bytes, name));
 }
 

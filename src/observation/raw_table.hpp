@@ -12,11 +12,14 @@
 
 namespace trotline::raw {
 
+enum class Separator { comma, white_space };
+
 struct Column {
   std::string name;
   std::optional<std::string> unit;
   std::string trouble =
       {};  ///< why no cell can hold one value (e.g. a vector column); matters where it is used
+  std::string datatype = {};  ///< as ECSV names it; empty in formats without
 };
 
 struct Row {
@@ -30,6 +33,7 @@ struct Table {
   std::vector<Column> columns;
   std::vector<Row> rows;
   std::string unit_place;  ///< where a unit is written in this format, for advice in messages
+  Separator separator = Separator::comma;  ///< between the cells of a row of text
 };
 
 /// One field of a line of text.
@@ -49,8 +53,6 @@ struct Line {
   std::string_view text;
 };
 
-enum class Separator { comma, white_space };
-
 /// Cuts a text into records: RFC 4180 quoting (doubled quotation marks, quoted line breaks), lines that
 /// end in LF, CRLF or CR, `#` comments and blank lines passed over.
 class RecordReader {
@@ -63,6 +65,10 @@ class RecordReader {
 
   /// The next line that is neither blank nor a comment, as it stands; nothing at the end.
   [[nodiscard]] std::optional<Line> next_line();
+
+  /// How many bytes of the text have been read, and the number of the line that comes next.
+  [[nodiscard]] std::size_t position() const { return at_; }
+  [[nodiscard]] std::size_t line() const { return line_; }
 
  private:
   [[nodiscard]] bool at_end() const { return at_ >= text_.size(); }
@@ -84,15 +90,29 @@ class RecordReader {
 /// All further records as rows with exactly `columns` cells. @throws InputError for a row of another length
 std::vector<Row> read_rows(RecordReader& reader, const std::string& file, std::size_t columns);
 
+/// A column of whole numbers (by its datatype) holds whole numbers: a cell that does not is a slip somewhere.
+void require_types(const Table& table);
+
+/// The format of a table, by its first bytes.
+TableFormat recognised(std::string_view bytes);
+
+/// Refuses files that are no table at all, by their first bytes.
+void refuse_other_formats(std::string_view bytes, const std::string& name);
+
 /// Refuses a text that is not UTF-8 or holds NUL bytes, with the line; returns it without byte-order mark.
 std::string_view checked_text(std::string_view bytes, const std::string& file);
 
 Table parse_csv(std::string_view text, const std::string& file);
 Table parse_words(std::string_view text, const std::string& file);
 Table parse_ecsv(std::string_view text, const std::string& file);
+/// One of the three above. @param format  not FITS
+Table parse_text(TableFormat format, std::string_view text, const std::string& file);
 Table parse_fits(std::string_view bytes, const std::string& file);
 
 /// Gives the columns their meaning: names, units, domains.
 IntensityTable interpret(const Table& table);
+
+/// Throws what interpret() would throw for columns alone, whatever the rows.
+void check_header(const Table& table);
 
 }  // namespace trotline::raw

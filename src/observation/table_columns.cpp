@@ -312,6 +312,8 @@ class Interpreter {
 
 }  // namespace
 
+void check_header(const Table& table) { Interpreter{table}; }
+
 IntensityTable interpret(const Table& table) { return Interpreter(table).read(); }
 
 }  // namespace trotline::raw

@@ -69,12 +69,7 @@ Separator separator_of(const YAML::Node& header, const std::string& file) {
                    {"the header names another delimiter", "delimiter: ',' or delimiter: ' '"});
 }
 
-struct TypedColumn {
-  Column column;
-  std::string datatype;
-};
-
-TypedColumn column_of(const YAML::Node& node, const Place& place) {
+Column column_of(const YAML::Node& node, const Place& place) {
   static constexpr std::array<const char*, 15> kTypes = {
       "bool",   "int8",    "int16",   "int32",   "int64",    "uint8",  "uint16",    "uint32",
       "uint64", "float16", "float32", "float64", "float128", "string", "complex128"};
@@ -82,23 +77,23 @@ TypedColumn column_of(const YAML::Node& node, const Place& place) {
     throw InputError(place, {"an entry of 'datatype' in the header lacks its name or datatype",
                              "entries such as {name: intensity, unit: K km / s, datatype: float64}"});
   }
-  TypedColumn typed{{scalar(node, "name"), std::nullopt}, scalar(node, "datatype")};
-  if (node["unit"]) typed.column.unit = scalar(node, "unit");
-  if (std::find(kTypes.begin(), kTypes.end(), typed.datatype) == kTypes.end()) {
-    throw InputError(place, {fmt::format("column '{}' has the datatype '{}'", printable(typed.column.name),
-                                         printable(typed.datatype)),
+  Column column{.name = scalar(node, "name"), .unit = std::nullopt, .datatype = scalar(node, "datatype")};
+  if (node["unit"]) column.unit = scalar(node, "unit");
+  if (std::find(kTypes.begin(), kTypes.end(), column.datatype) == kTypes.end()) {
+    throw InputError(place, {fmt::format("column '{}' has the datatype '{}'", printable(column.name),
+                                         printable(column.datatype)),
                              "a datatype of ECSV 1.0, such as float64, int64, bool or string"});
   }
-  return typed;
+  return column;
 }
 
-std::vector<TypedColumn> columns_of(const YAML::Node& header, const std::string& file) {
+std::vector<Column> columns_of(const YAML::Node& header, const std::string& file) {
   const YAML::Node list = header.IsMap() ? header["datatype"] : YAML::Node{};
   if (!list || !list.IsSequence() || list.size() == 0) {
     throw InputError(Place{file, 1},
                      {"the header lists no columns", "'datatype:' and one entry for each column"});
   }
-  std::vector<TypedColumn> columns;
+  std::vector<Column> columns;
   for (const YAML::Node& node : list) {
     const std::size_t line = node.Mark().is_null() ? 1 : static_cast<std::size_t>(node.Mark().line) + 2;
     columns.push_back(column_of(node, Place{file, line}));
@@ -106,8 +101,7 @@ std::vector<TypedColumn> columns_of(const YAML::Node& header, const std::string&
   return columns;
 }
 
-void require_same_names(const std::vector<TypedColumn>& columns, const Record& names,
-                        const std::string& file) {
+void require_same_names(const std::vector<Column>& columns, const Record& names, const std::string& file) {
   const auto refuse = [&](const std::string& found, const std::string& expected) {
     throw InputError(Place{file, names.line}, {found, expected, "the line of names must repeat the header"});
   };
@@ -115,33 +109,32 @@ void require_same_names(const std::vector<TypedColumn>& columns, const Record& n
     refuse(fmt::format("{} names of columns", names.fields.size()), fmt::format("{}", columns.size()));
   }
   for (std::size_t i = 0; i < columns.size(); ++i) {
-    if (names.fields[i].text == columns[i].column.name) continue;
+    if (names.fields[i].text == columns[i].name) continue;
     refuse(fmt::format("column {} is named '{}'", i + 1, printable(names.fields[i].text)),
-           fmt::format("'{}'", printable(columns[i].column.name)));
-  }
-}
-
-/// A whole-number column holds whole numbers: a cell that does not is a slip somewhere.
-void require_types(const std::vector<TypedColumn>& columns, const Table& table) {
-  for (std::size_t i = 0; i < columns.size(); ++i) {
-    const std::string& type = columns[i].datatype;
-    if (!type.starts_with("int") && !type.starts_with("uint")) continue;
-    for (const Row& row : table.rows) {
-      if (row.cells[i].empty() || parse_whole_number(row.cells[i])) continue;
-      throw InputError(
-          Place{table.file, row.line},
-          {fmt::format("column '{}' holds '{}'", printable(columns[i].column.name), printable(row.cells[i])),
-           fmt::format("a whole number, as its datatype {} says", type)});
-    }
+           fmt::format("'{}'", printable(columns[i].name)));
   }
 }
 
 }  // namespace
 
+void require_types(const Table& table) {
+  for (std::size_t i = 0; i < table.columns.size(); ++i) {
+    const std::string& type = table.columns[i].datatype;
+    if (!type.starts_with("int") && !type.starts_with("uint")) continue;
+    for (const Row& row : table.rows) {
+      if (row.cells[i].empty() || parse_whole_number(row.cells[i])) continue;
+      throw InputError(
+          Place{table.file, row.line},
+          {fmt::format("column '{}' holds '{}'", printable(table.columns[i].name), printable(row.cells[i])),
+           fmt::format("a whole number, as its datatype {} says", type)});
+    }
+  }
+}
+
 Table parse_ecsv(std::string_view text, const std::string& file) {
   const Header header = take_header(text, file);
   const YAML::Node yaml = load(header, file);
-  const std::vector<TypedColumn> columns = columns_of(yaml, file);
+  std::vector<Column> columns = columns_of(yaml, file);
   RecordReader reader(header.rest, file, header.lines + 1, separator_of(yaml, file));
   const auto names = reader.next();
   if (!names) {
@@ -151,12 +144,12 @@ Table parse_ecsv(std::string_view text, const std::string& file) {
   require_same_names(columns, *names, file);
   Table table{.file = file,
               .header_line = names->line,
-              .columns = {},
+              .columns = std::move(columns),
               .rows = {},
               .unit_place = "written as 'unit:' in the header's entry of the column"};
-  for (const TypedColumn& typed : columns) table.columns.push_back(typed.column);
-  table.rows = read_rows(reader, file, columns.size());
-  require_types(columns, table);
+  table.separator = separator_of(yaml, file);
+  table.rows = read_rows(reader, file, table.columns.size());
+  require_types(table);
   return table;
 }
 

@@ -2,20 +2,13 @@
 
 #include <trotline/base/text.hpp>
 
-#include "fits_file.hpp"
-#include "raw_table.hpp"
+#include "fits_rows.hpp"
 
 namespace trotline::raw {
 namespace {
 
-struct ColumnType {
-  int code = 0;  ///< CFITSIO's type after scaling
-  long repeat = 0;
-  long width = 0;
-};
-
-ColumnType type_of(const FitsFile& file, int column) {
-  ColumnType type;
+FitsColumnType type_of(const FitsFile& file, int column) {
+  FitsColumnType type;
   int status = 0;
   fits_get_eqcoltype(file.handle(), column, &type.code, &type.repeat, &type.width, &status);
   file.check(status, fmt::format("column {} of the table has no readable type", column));
@@ -28,7 +21,7 @@ bool is_whole(int code) {
 }
 
 /// Why a column cannot give one value a row; empty when it can.
-std::string trouble_of(const ColumnType& type) {
+std::string trouble_of(const FitsColumnType& type) {
   if (type.code < 0) return "holds arrays of variable length";
   if (type.code == TCOMPLEX || type.code == TDBLCOMPLEX) return "holds complex numbers";
   if (type.code == TBIT) return "holds bits";
@@ -46,49 +39,48 @@ std::string keyword(const FitsFile& file, const std::string& name) {
 
 /// One column of `Value`, with CFITSIO's flags for undefined elements, as text.
 template <class Value, class ToText>
-void read_values(const FitsFile& file, int column, int code, Table& table, const ToText& to_text) {
-  const std::size_t rows = table.rows.size();
-  const auto values = std::make_unique<Value[]>(rows);
-  std::vector<char> undefined(rows);
+void read_values(const FitsFile& file, int column, int code, std::span<Row> rows, const ToText& to_text) {
+  const auto values = std::make_unique<Value[]>(rows.size());
+  std::vector<char> undefined(rows.size());
   int status = 0;
   int any = 0;
-  fits_read_colnull(file.handle(), code, column, 1, 1, static_cast<LONGLONG>(rows), values.get(),
-                    undefined.data(), &any, &status);
+  fits_read_colnull(file.handle(), code, column, static_cast<LONGLONG>(rows.front().line), 1,
+                    static_cast<LONGLONG>(rows.size()), values.get(), undefined.data(), &any, &status);
   file.check(status, fmt::format("column {} of the table cannot be read", column));
-  for (std::size_t i = 0; i < rows; ++i) {
-    if (!undefined[i]) table.rows[i].cells[static_cast<std::size_t>(column) - 1] = to_text(values[i]);
+  for (std::size_t i = 0; i < rows.size(); ++i) {
+    if (!undefined[i]) rows[i].cells[static_cast<std::size_t>(column) - 1] = to_text(values[i]);
   }
 }
 
-void read_strings(const FitsFile& file, int column, long width, Table& table) {
+void read_strings(const FitsFile& file, int column, long width, std::span<Row> rows) {
   std::string buffer(static_cast<std::size_t>(width) + 1, '\0');
-  for (std::size_t i = 0; i < table.rows.size(); ++i) {
+  for (Row& row : rows) {
     char* text = buffer.data();
     int status = 0;
     int any = 0;
     std::string no_replacement(1, '\0');
-    fits_read_col(file.handle(), TSTRING, column, static_cast<LONGLONG>(i) + 1, 1, 1, no_replacement.data(),
-                  &text, &any, &status);
+    fits_read_col(file.handle(), TSTRING, column, static_cast<LONGLONG>(row.line), 1, 1,
+                  no_replacement.data(), &text, &any, &status);
     file.check(status, fmt::format("column {} of the table cannot be read", column));
     const std::string cell = buffer.c_str();
     if (!is_utf8(cell)) {
       throw InputError(
-          Place{file.name(), i + 1},
+          Place{file.name(), row.line},
           {fmt::format("column {} holds bytes that are not text", column), "text in ASCII or UTF-8"});
     }
-    table.rows[i].cells[static_cast<std::size_t>(column) - 1] = trimmed(cell);
+    row.cells[static_cast<std::size_t>(column) - 1] = trimmed(cell);
   }
 }
 
-void read_column(const FitsFile& file, int column, const ColumnType& type, Table& table) {
+void read_column(const FitsFile& file, int column, const FitsColumnType& type, std::span<Row> rows) {
   if (type.code == TSTRING) {
-    read_strings(file, column, type.width, table);
+    read_strings(file, column, type.width, rows);
   } else if (type.code == TLOGICAL) {
-    read_values<char>(file, column, TLOGICAL, table, [](char v) { return v ? "true" : "false"; });
+    read_values<char>(file, column, TLOGICAL, rows, [](char v) { return v ? "true" : "false"; });
   } else if (is_whole(type.code)) {
-    read_values<LONGLONG>(file, column, TLONGLONG, table, [](LONGLONG v) { return std::to_string(v); });
+    read_values<LONGLONG>(file, column, TLONGLONG, rows, [](LONGLONG v) { return std::to_string(v); });
   } else {
-    read_values<double>(file, column, TDOUBLE, table, [](double v) { return fmt::format("{}", v); });
+    read_values<double>(file, column, TDOUBLE, rows, [](double v) { return fmt::format("{}", v); });
   }
 }
 
@@ -138,26 +130,38 @@ int count_columns(const FitsFile& file) {
 
 }  // namespace
 
-Table parse_fits(std::string_view bytes, const std::string& name) {
-  const FitsFile file(bytes, name);
-  go_to_table(file);
-  Table table{.file = name,
-              .header_line = 0,
-              .columns = {},
-              .rows = {},
-              .unit_place = "written in the keyword TUNITn of the column"};
-  const int columns = count_columns(file);
-  table.rows.resize(count_rows(file));
-  for (std::size_t i = 0; i < table.rows.size(); ++i) {
-    table.rows[i] = {.line = i + 1, .cells = std::vector<std::string>(static_cast<std::size_t>(columns))};
-  }
+FitsRows::FitsRows(std::string_view bytes, const std::string& name) : file_(bytes, name) {
+  go_to_table(file_);
+  header_ = {.file = name,
+             .header_line = 0,
+             .columns = {},
+             .rows = {},
+             .unit_place = "written in the keyword TUNITn of the column"};
+  const int columns = count_columns(file_);
+  count_ = count_rows(file_);
   for (int i = 1; i <= columns; ++i) {
-    const ColumnType type = type_of(file, i);
-    Column column{keyword(file, fmt::format("TTYPE{}", i)), std::nullopt, trouble_of(type)};
-    if (const std::string unit = keyword(file, fmt::format("TUNIT{}", i)); !unit.empty()) column.unit = unit;
-    if (column.trouble.empty()) read_column(file, i, type, table);
-    table.columns.push_back(std::move(column));
+    types_.push_back(type_of(file_, i));
+    Column column{keyword(file_, fmt::format("TTYPE{}", i)), std::nullopt, trouble_of(types_.back())};
+    if (const std::string unit = keyword(file_, fmt::format("TUNIT{}", i)); !unit.empty()) column.unit = unit;
+    header_.columns.push_back(std::move(column));
   }
+}
+
+std::vector<Row> FitsRows::read(std::size_t first, std::size_t count) const {
+  std::vector<Row> rows(count);
+  for (std::size_t i = 0; i < count; ++i) {
+    rows[i] = {.line = first + i + 1, .cells = std::vector<std::string>(header_.columns.size())};
+  }
+  for (std::size_t i = 0; i < types_.size() && count > 0; ++i) {
+    if (header_.columns[i].trouble.empty()) read_column(file_, static_cast<int>(i) + 1, types_[i], rows);
+  }
+  return rows;
+}
+
+Table parse_fits(std::string_view bytes, const std::string& name) {
+  const FitsRows reader(bytes, name);
+  Table table = reader.header();
+  table.rows = reader.read(0, reader.count());
   return table;
 }
 

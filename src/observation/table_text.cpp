@@ -88,6 +88,7 @@ Table parse_words(std::string_view text, const std::string& file) {
                      {"the header line is separated by ';'", "columns separated by commas or white space"});
   }
   Table table{.file = file, .header_line = place.line, .columns = {}, .rows = {}, .unit_place = kUnitPlace};
+  table.separator = Separator::white_space;
   while (!rest.empty()) table.columns.push_back(take_column(rest, place));
   refuse_numbers_as_header(table);
   table.rows = read_rows(reader, file, table.columns.size());
