@@ -23,7 +23,7 @@ struct DipoleMoment {
 
 /// What to compute and what to keep. The same for every rotor.
 struct RotorOptions {
-  int highest_j = 60;  ///< levels up to this J (N for triplet-sigma); 0 to kHighestJ
+  int highest_j = 60;  ///< levels up to this J; 0 to kHighestJ
   double highest_energy_hz = std::numeric_limits<double>::infinity();  ///< levels above are dropped
   double lowest_frequency_hz = 0.0;                                    ///< lines below, or at 0, are dropped
   double highest_frequency_hz = std::numeric_limits<double>::infinity();  ///< lines above are dropped
