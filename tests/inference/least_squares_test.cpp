@@ -2,7 +2,6 @@
 
 #include <gtest/gtest.h>
 
-#include <cstdlib>
 #include <filesystem>
 #include <fstream>
 #include <sstream>
@@ -11,6 +10,8 @@
 
 #include <trotline/base/errors.hpp>
 
+#include "support/shared_folder.hpp"
+
 namespace trotline {
 namespace {
 
@@ -18,11 +19,6 @@ namespace fs = std::filesystem;
 
 void expect_relative(double actual, double expected, double tolerance) {
   EXPECT_LE(std::abs(actual - expected), tolerance * std::abs(expected)) << actual << " against " << expected;
-}
-
-fs::path shared_folder() {
-  if (const char* folder = std::getenv("TROTLINE_SHARED")) return folder;
-  return fs::path(TROTLINE_SOURCE_DIR) / ".." / "shared";
 }
 
 /// The Norris data: calibration of ozone monitors. y and x from line 61 on, as the file's header says.
@@ -47,7 +43,7 @@ void read_norris(const fs::path& path, Eigen::VectorXd& x, Eigen::VectorXd& y) {
 // Certified values of NIST StRD, linear regression, data set Norris (lower level of difficulty, observed
 // data; https://www.itl.nist.gov/div898/strd/lls/data/Norris.shtml).
 TEST(LeastSquares, ReproducesCertifiedNorrisTo1e9) {
-  const fs::path path = shared_folder() / "reference" / "nist_strd" / "Norris.dat";
+  const fs::path path = testing_support::reference_file("nist_strd/Norris.dat");
   if (!fs::exists(path)) GTEST_SKIP() << "the certified data set is not here";
   Eigen::VectorXd x;
   Eigen::VectorXd y;
