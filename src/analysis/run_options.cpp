@@ -187,22 +187,27 @@ const std::vector<RunOption>& run_option_table() {
   return table;
 }
 
-void set_run_option(RunOptions& options, const std::string& key, const std::string& value) {
-  std::vector<std::string> keys;
+const RunOption* find_run_option(const std::string& key) {
   for (const RunOption& option : run_option_table()) {
-    keys.push_back(option.key);
-    if (option.key != key) continue;
-    try {
-      option.set(options, value);
-    } catch (const InputError& error) {
-      const Complaint& complaint = error.complaint();
-      throw InputError(Place{}, {key + ": " + complaint.found, complaint.expected,
-                                 complaint.advice.empty() ? "" : complaint.advice});
-    }
-    return;
+    if (option.key == key) return &option;
   }
-  throw InputError({fmt::format("there is no option '{}'", printable(key)), "one of: " + listed(keys, keys.size()),
-                    did_you_mean(key, keys)});
+  return nullptr;
+}
+
+void set_run_option(RunOptions& options, const std::string& key, const std::string& value) {
+  const RunOption* option = find_run_option(key);
+  if (option == nullptr) {
+    std::vector<std::string> keys;
+    for (const RunOption& known : run_option_table()) keys.push_back(known.key);
+    throw InputError({fmt::format("there is no option '{}'", printable(key)), "one of: " + listed(keys, keys.size()),
+                      did_you_mean(key, keys)});
+  }
+  try {
+    option->set(options, value);
+  } catch (const InputError& error) {
+    const Complaint& complaint = error.complaint();
+    throw InputError({key + ": " + complaint.found, complaint.expected, complaint.advice});
+  }
 }
 
 std::vector<std::pair<std::string, std::string>> shown(const RunOptions& options) {

@@ -6,6 +6,7 @@
 #include <trotline/analysis/run_description.hpp>
 #include <trotline/analysis/run_options.hpp>
 #include <trotline/observation/intensity_table.hpp>
+#include <trotline/species/library.hpp>
 #include <trotline/species/species.hpp>
 
 namespace trotline {
@@ -17,5 +18,9 @@ namespace trotline {
 /// line. Data that cannot answer give a Result with a status other than `done` and what can be said.
 /// @throws InputError  as match_rows, and where a row lacks what the options ask of it (a beam, an efficiency)
 [[nodiscard]] Result analyse(const Species& species, const IntensityTable& table, const RunOptions& options);
+
+/// Reads the species and the table of a description and analyses them; the table's fingerprint goes into the
+/// provenance. @throws InputError as SpeciesLibrary::find, read_intensity_table and analyse
+[[nodiscard]] Result analyse(const RunDescription& run, const SpeciesLibrary& library);
 
 }  // namespace trotline

@@ -47,6 +47,9 @@ struct RunOption {
 /// All options, in the order in which they are documented.
 [[nodiscard]] const std::vector<RunOption>& run_option_table();
 
+/// The option of that key, or a null pointer.
+[[nodiscard]] const RunOption* find_run_option(const std::string& key);
+
 /// Sets one option from text. @throws InputError when there is no such key (with the nearest one), or when
 /// the value is wrong (naming key, value and an example)
 void set_run_option(RunOptions& options, const std::string& key, const std::string& value);
