@@ -22,7 +22,7 @@ struct Kind {
   const char* example;
 };
 
-constexpr std::array<Kind, 14> kKinds = {{
+constexpr std::array<Kind, 15> kKinds = {{
     {Dimension::frequency, "Hz", "a frequency", "230.538 GHz"},
     {Dimension::velocity, "m/s", "a velocity", "12.5 km/s"},
     {Dimension::angle, "rad", "an angle", "27.4 arcsec"},
@@ -36,6 +36,7 @@ constexpr std::array<Kind, 14> kKinds = {{
     {Dimension::mass, "kg", "a mass", "12 u"},
     {Dimension::dipole_moment, "C m", "a dipole moment", "0.11 D"},
     {Dimension::time, "s", "a time", "600 s"},
+    {Dimension::rate, "s-1", "a rate", "7.2e-8 s-1"},
     {Dimension::dimensionless, "", "a number", "0.1 or 10 %"},
 }};
 
@@ -50,7 +51,8 @@ const Kind& kind_of(Dimension dimension) { return kKinds.at(static_cast<std::siz
 /// a few units in the last place of a power of ten is that power.
 double cleaned(double scale) {
   const double power_of_ten = std::pow(10.0, std::round(std::log10(scale)));
-  const bool is_rounding = std::abs(scale / power_of_ten - 1.0) < 8.0 * std::numeric_limits<double>::epsilon();
+  const bool is_rounding =
+      std::abs(scale / power_of_ten - 1.0) < 8.0 * std::numeric_limits<double>::epsilon();
   return is_rounding ? power_of_ten : scale;
 }
 

@@ -59,11 +59,14 @@ VibrationalFactor vibrational_factor(const std::vector<VibrationalMode>& modes, 
 class LevelSum final : public PartitionFunction {
  public:
   LevelSum(const std::vector<Level>& levels, const LevelSumOptions& options)
-      : levels_(sorted(levels)), modes_(options.modes), highest_k_(options.highest_k) {
+      : levels_(sorted(levels)),
+        zero_k_(lowest_energy(levels)),
+        modes_(options.modes),
+        highest_k_(options.highest_k) {
     // Everything beyond adds less than (sum of g) exp(-cut) = g_0 exp(-40), under 1e-17 of Q.
     cut_ = 40.0 + std::log(states() / levels_.degeneracies[0]);
     compress();
-    complete_to_k_ = options.complete_to_k.value_or(last_energy());
+    complete_to_k_ = options.complete_to_k ? *options.complete_to_k - zero_k_ : last_energy();
     if (std::isfinite(complete_to_k_) && complete_to_k_ > 0.0) {
       complete_states_ = states_up_to(complete_to_k_);
       growth_ = std::clamp(std::log2(complete_states_ / states_up_to(0.5 * complete_to_k_)), 0.5, 6.0);
@@ -97,16 +100,18 @@ class LevelSum final : public PartitionFunction {
     double qe = 0.0;  ///< sum of g E exp(-x)
   };
 
+  /// By rising energy, which counts from the lowest level: no sum underflows at low T.
   static LevelArrays sorted(const std::vector<Level>& levels) {
     std::vector<std::size_t> order(levels.size());
     std::iota(order.begin(), order.end(), std::size_t{0});
     std::stable_sort(order.begin(), order.end(),
                      [&](std::size_t a, std::size_t b) { return levels[a].energy_k < levels[b].energy_k; });
     const auto n = static_cast<Eigen::Index>(levels.size());
+    const Level& lowest = levels[order.front()];
     LevelArrays arrays{Eigen::ArrayXd(n), Eigen::ArrayXd(n)};
     for (Eigen::Index i = 0; i < n; ++i) {
       const Level& level = levels[order[static_cast<std::size_t>(i)]];
-      arrays.energies_k[i] = level.energy_k;
+      arrays.energies_k[i] = level.energy_k - lowest.energy_k;
       arrays.degeneracies[i] = level.degeneracy;
     }
     return arrays;
@@ -120,6 +125,12 @@ class LevelSum final : public PartitionFunction {
     const double width_k = 12.0 * last_energy() / static_cast<double>(n);
     thinned_ = compressed(levels_, width_k);
     thinned_from_k_ = kTemperatureOverWindow * width_k;
+  }
+
+  static double lowest_energy(const std::vector<Level>& levels) {
+    return std::min_element(levels.begin(), levels.end(),
+                            [](const Level& a, const Level& b) { return a.energy_k < b.energy_k; })
+        ->energy_k;
   }
 
   [[nodiscard]] double last_energy() const { return levels_.energies_k[levels_.energies_k.size() - 1]; }
@@ -153,9 +164,9 @@ class LevelSum final : public PartitionFunction {
     const Sums sum = sums(temperature_k);
     const VibrationalFactor vibration = vibrational_factor(modes_, temperature_k);
     PartitionValue value;
-    value.ln_q = std::log(sum.q) + vibration.ln_q;
-    value.q = modes_.empty() ? sum.q : sum.q * std::exp(vibration.ln_q);
-    value.dlnq_dt = sum.qe / (sum.q * temperature_k * temperature_k) + vibration.dlnq_dt;
+    value.ln_q = std::log(sum.q) + vibration.ln_q - zero_k_ / temperature_k;
+    value.q = sum.q * std::exp(vibration.ln_q - zero_k_ / temperature_k);
+    value.dlnq_dt = (sum.qe / sum.q + zero_k_) / (temperature_k * temperature_k) + vibration.dlnq_dt;
     value.relative_error = tail(temperature_k) / sum.q;
     return value;
   }
@@ -181,6 +192,7 @@ class LevelSum final : public PartitionFunction {
   }
 
   LevelArrays levels_;
+  double zero_k_;        ///< energy of the lowest level, from which levels_ count
   LevelArrays thinned_;  ///< stands for levels_ from thinned_from_k_ on
   double thinned_from_k_ = std::numeric_limits<double>::infinity();
   std::vector<VibrationalMode> modes_;

@@ -135,6 +135,20 @@ TEST(LevelSum, EstimatesTruncationFromWhereLevelsBeginToMiss) {
   EXPECT_THROW((void)partition_function_from_levels(levels, options), DomainError);
 }
 
+TEST(LevelSum, CountsFromAZeroThatIsNoLevel) {
+  // The lowest level allowed to a species may lie above the zero of its energies: Q then falls as T goes to
+  // 0.
+  const auto partition =
+      partition_function_from_levels({{"1", 20.0, 3.0, ""}, {"2", 50.0, 5.0, ""}}, complete_list(1e4));
+  for (const double t : {5.0, 40.0, 300.0}) {
+    const double q = 3.0 * std::exp(-20.0 / t) + 5.0 * std::exp(-50.0 / t);
+    EXPECT_NEAR(partition->at(t).q / q, 1.0, 1e-15);
+    const double mean_energy = (60.0 * std::exp(-20.0 / t) + 250.0 * std::exp(-50.0 / t)) / q;
+    EXPECT_NEAR(partition->at(t).dlnq_dt * t * t / mean_energy, 1.0, 1e-14);
+  }
+  EXPECT_NEAR(partition->at(0.01).ln_q, std::log(3.0) - 2000.0, 1e-12);  // Q itself underflows
+}
+
 TEST(LevelSum, MeanEnergyStaysFiniteAtTheLowestTemperature) {
   const PartitionValue value =
       partition_function_from_levels(rigid_linear_rotor(2.0, 10))->at(kLowestTemperatureK);

@@ -20,6 +20,7 @@ enum class Dimension {
   mass,                  ///< kg
   dipole_moment,         ///< C m
   time,                  ///< s
+  rate,                  ///< 1/s
   dimensionless          ///< 1; "%" is understood
 };
 

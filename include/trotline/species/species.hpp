@@ -31,6 +31,7 @@ struct Species {
   std::vector<Transition> transitions;  ///< by rising frequency
   std::shared_ptr<const PartitionFunction> partition;
   std::vector<Citation> citations;
+  std::string note;                   ///< a remark of the file's author, on one line; often empty
   std::vector<std::string> warnings;  ///< what a user of these numbers must know
   std::string file;                   ///< where it was read from
   std::string file_fingerprint;       ///< see fingerprint()
