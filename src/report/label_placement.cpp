@@ -13,12 +13,17 @@ namespace {
 // matters: an overlap must never pay, a leader is better than crossing two lines, and so on.
 constexpr double kOverlap = 1000.0;
 constexpr double kLeftOut = 300.0;
-constexpr double kLeaderOverLabel = 60.0;
+constexpr double kLeaderOverLabel = 320.0;
 constexpr double kLeaderOverLeader = 40.0;
-constexpr double kLeaderOverMarker = 12.0;
-constexpr double kOverLine = 2.5;
+constexpr double kLeaderOverMarker = 25.0;
+constexpr double kOverLine = 8.0;
+constexpr double kGoodEnough = 2.0;  // for every label: then nothing is searched
 constexpr double kLeader = 4.0;
-constexpr double kLeaderPerLength = 0.5;  // in units of the label's height
+constexpr double kLeaderPerLength = 0.3;   // in units of the label's height
+constexpr double kLeaderPerSquare = 0.08;  // of the same
+constexpr double kLeaderAside = 6.0;
+constexpr double kAcross = std::numbers::pi / 4;
+constexpr double kFarthest = 12.0;  // in units of the label's height
 
 /// One place that a label may take.
 struct Candidate {
@@ -89,16 +94,17 @@ Segment leader_to(const Box& box, const LabelRequest& label, const LabelScene& s
           label.y + end * (y - label.y)};
 }
 
-Candidate far_candidate(const LabelRequest& label, const LabelScene& scene, double distance, double angle) {
-  const double right = std::clamp(1.5 * std::cos(angle), -1.0, 1.0);
-  const double up = std::clamp(1.5 * std::sin(angle), -1.0, 1.0);
-  const double x = label.x + distance * std::cos(angle) + right * label.width / 2;
-  const double y = label.y + distance * std::sin(angle) + up * label.height / 2;
+/// A place away from the point, with a leader.
+Candidate far_candidate(const LabelRequest& label, const LabelScene& scene, double x, double y) {
   Candidate candidate{box_around(x, y, label.width, label.height), std::nullopt, 0.0};
-  candidate.leader = leader_to(candidate.box, label, scene);
-  // Above right and below left lie beside a falling line.
-  const double aside = 1.0 - std::abs(std::cos(angle - std::numbers::pi / 4));
-  candidate.cost = kLeader + kLeaderPerLength * distance / label.height + aside;
+  const Segment leader = leader_to(candidate.box, label, scene);
+  const double length = std::hypot(leader.x1 - label.x, leader.y1 - label.y);
+  const double angle = std::atan2(leader.y1 - label.y, leader.x1 - label.x);
+  // Leaders that run alike do not cross: across a falling line, which leaves room above right and below left.
+  const double aside = 1.0 - std::abs(std::cos(angle - kAcross));
+  candidate.leader = leader;
+  const double heights = length / label.height;
+  candidate.cost = kLeader + (kLeaderPerLength + kLeaderPerSquare * heights) * heights + kLeaderAside * aside;
   return candidate;
 }
 
@@ -135,40 +141,66 @@ std::vector<Candidate> candidates_for(const LabelRequest& label, const LabelScen
     candidates.push_back(candidate);
   };
   for (const Place& place : kNear) consider(near_candidate(label, scene, place));
-  constexpr int kDirections = 24;
-  for (const double heights : {1.0, 1.7, 2.5, 3.5, 4.7, 6.0, 7.5, 9.0, 11.0, 13.5}) {
-    for (int i = 0; i < kDirections; ++i) {
-      const double angle = 2.0 * std::numbers::pi * i / kDirections;
-      consider(far_candidate(label, scene, scene.marker_radius + heights * label.height, angle));
+  // Away from the point, labels stand in common rows: they pack closer so, and look calmer.
+  const double pitch = label.height + scene.gap;
+  const auto rows = static_cast<int>((scene.frame.top - scene.frame.bottom) / pitch);
+  for (int row = 0; row < rows; ++row) {
+    const double y = scene.frame.top - (row + 0.5) * pitch;
+    if (std::abs(y - label.y) > kFarthest * label.height) continue;
+    for (const double away : {0.0, 0.4, 0.9, 1.5, 2.2, 3.0, 4.0, 5.2, 6.6, 8.4}) {
+      const double reach = scene.marker_radius + away * label.height;
+      consider(far_candidate(label, scene, label.x + reach + label.width / 2, y));
+      consider(far_candidate(label, scene, label.x - reach - label.width / 2, y));
     }
+    consider(far_candidate(label, scene, label.x, y));
   }
   std::stable_sort(candidates.begin(), candidates.end(),
                    [](const Candidate& a, const Candidate& b) { return a.cost < b.cost; });
   return candidates;
 }
 
+/// Leaders that meet where they start, at points close together, do not confuse.
+Segment outer_part(const Segment& leader) {
+  constexpr double kInner = 0.15;
+  return {leader.x0 + kInner * (leader.x1 - leader.x0), leader.y0 + kInner * (leader.y1 - leader.y0),
+          leader.x1, leader.y1};
+}
+
 double cost_between(const Candidate& a, const Candidate& b, double gap) {
-  if (!overlap(a.reach, b.reach)) return 0.0;
-  double cost = overlap(grown(a.box, gap / 2), grown(b.box, gap / 2)) ? kOverlap : 0.0;
-  if (a.leader && crosses(*a.leader, b.box)) cost += kLeaderOverLabel;
-  if (b.leader && crosses(*b.leader, a.box)) cost += kLeaderOverLabel;
-  if (a.leader && b.leader && crosses(*a.leader, *b.leader)) cost += kLeaderOverLeader;
+  if (overlap(grown(a.box, gap), b.box)) return kOverlap;  // worse than all the rest
+  double cost = 0.0;
+  if (a.leader && crosses(*a.leader, grown(b.box, 0.4 * gap))) cost += kLeaderOverLabel;
+  if (b.leader && crosses(*b.leader, grown(a.box, 0.4 * gap))) cost += kLeaderOverLabel;
+  if (a.leader && b.leader && crosses(outer_part(*a.leader), outer_part(*b.leader)))
+    cost += kLeaderOverLeader;
   return cost;
+}
+
+/// overlap() without branches: it is asked millions of times, and its answers do not repeat.
+bool meets(const Box& a, const Box& b) {
+  return static_cast<bool>(static_cast<int>(a.left < b.right) & static_cast<int>(b.left < a.right) &
+                           static_cast<int>(a.bottom < b.top) & static_cast<int>(b.bottom < a.top));
 }
 
 /// The search: which candidate each label takes. kNone stands for a label left out.
 class Search {
  public:
-  explicit Search(const LabelScene& scene) : scene_(scene) {
+  explicit Search(const LabelScene& scene) : gap_(scene.gap) {
     for (const LabelRequest& label : scene.labels) candidates_.push_back(candidates_for(label, scene));
     choice_.assign(scene.labels.size(), kNone);
+    cost_.assign(scene.labels.size(), kLeftOut);
+    reach_.assign(scene.labels.size(), kNowhere);
   }
 
   void run() {
     descend();
-    if (!is_crowded()) return;
+    const auto is_dear = [](double cost) { return cost > kGoodEnough; };
+    if (std::none_of(cost_.begin(), cost_.end(), is_dear)) return;
     anneal();
     descend();
+    leave_out();
+    descend();
+    leave_out();
   }
 
   [[nodiscard]] const Candidate* chosen(std::size_t label) const {
@@ -178,65 +210,105 @@ class Search {
  private:
   static constexpr std::size_t kNone = static_cast<std::size_t>(-1);
 
-  [[nodiscard]] double cost_of(std::size_t label, std::size_t choice) const {
-    if (choice == kNone) return kLeftOut;
-    const Candidate& candidate = candidates_[label][choice];
-    double cost = candidate.cost;
-    for (std::size_t other = 0; other < choice_.size(); ++other) {
-      const Candidate* const taken = other == label ? nullptr : chosen(other);
-      if (taken) cost += cost_between(candidate, *taken, scene_.gap);
+  /// A box that overlaps none.
+  static constexpr Box kNowhere = {HUGE_VAL, HUGE_VAL, -HUGE_VAL, -HUGE_VAL};
+
+  /// Calls use(other, cost between them) until it returns false.
+  template <class Use>
+  void for_each_neighbour(std::size_t label, const Candidate& candidate, Use use) const {
+    for (std::size_t other = 0; other < reach_.size(); ++other) {
+      if (!meets(candidate.reach, reach_[other]) || other == label) continue;
+      if (!use(other, cost_between(candidate, candidates_[other][choice_[other]], gap_))) return;
     }
+  }
+
+  /// What a label would cost at a place; where that is more than `most`, something more than `most`.
+  [[nodiscard]] double cost_of(std::size_t label, std::size_t choice, double most) const {
+    double cost = candidates_[label][choice].cost;
+    for_each_neighbour(label, candidates_[label][choice], [&](std::size_t, double more) {
+      cost += more;
+      return cost <= most;
+    });
     return cost;
+  }
+
+  /// Moves a label, or leaves it out, and keeps the costs of the others up to date.
+  void move(std::size_t label, std::size_t choice, double cost) {
+    if (const Candidate* const before = chosen(label)) {
+      for_each_neighbour(label, *before, [&](std::size_t other, double less) {
+        cost_[other] -= less;
+        return true;
+      });
+    }
+    choice_[label] = choice;
+    cost_[label] = cost;
+    const Candidate* const after = chosen(label);
+    reach_[label] = after ? after->reach : kNowhere;
+    if (!after) return;
+    for_each_neighbour(label, *after, [&](std::size_t other, double more) {
+      cost_[other] += more;
+      return true;
+    });
+  }
+
+  /// Leaves out, the dearest first, what costs more where it is.
+  void leave_out() {
+    for (;;) {
+      const auto dearest = std::max_element(cost_.begin(), cost_.end());
+      if (dearest == cost_.end() || *dearest <= kLeftOut) return;
+      move(static_cast<std::size_t>(dearest - cost_.begin()), kNone, kLeftOut);
+    }
   }
 
   /// Each label in turn takes its cheapest place until none moves any more.
   void descend() {
-    for (int sweep = 0; sweep < 30; ++sweep) {
-      bool moved = false;
+    constexpr int kMostSweeps = 30;
+    constexpr double kLeast = 1e-6;  // gains below it are rounding
+    bool moved = true;
+    for (int sweep = 0; sweep < kMostSweeps && moved; ++sweep) {
+      moved = false;
       for (std::size_t label = 0; label < choice_.size(); ++label) {
-        double best = cost_of(label, choice_[label]);
         for (std::size_t choice = 0; choice < candidates_[label].size(); ++choice) {
-          if (candidates_[label][choice].cost >= best) break;  // they are sorted
-          const double cost = cost_of(label, choice);
-          if (cost >= best) continue;
-          best = cost;
-          choice_[label] = choice;
+          if (candidates_[label][choice].cost >= cost_[label] - kLeast) break;  // they are sorted
+          const double cost = cost_of(label, choice, cost_[label]);
+          if (cost >= cost_[label] - kLeast) continue;
+          move(label, choice, cost);
           moved = true;
         }
       }
-      if (!moved) return;
     }
-  }
-
-  [[nodiscard]] bool is_crowded() const {
-    for (std::size_t label = 0; label < choice_.size(); ++label) {
-      if (cost_of(label, choice_[label]) > kLeader) return true;
-    }
-    return false;
   }
 
   void anneal() {
     std::mt19937 random(20260101);
     const auto uniform = [&] { return static_cast<double>(random()) / 4294967296.0; };
-    const std::size_t steps = 1500 * choice_.size();
-    constexpr double kHot = 12.0;
-    constexpr double kCold = 0.2;
+    const std::size_t steps = kStepsPerLabel * choice_.size();
     for (std::size_t step = 0; step < steps; ++step) {
       const double heat =
           kHot * std::pow(kCold / kHot, static_cast<double>(step) / static_cast<double>(steps));
-      const std::size_t label = random() % choice_.size();
+      const std::size_t one = random() % choice_.size();
+      const std::size_t two = random() % choice_.size();
+      const std::size_t label = cost_[one] > cost_[two] ? one : two;  // the worse off moves
       if (candidates_[label].empty()) continue;
       // Squared: the cheap places, which stand first, are tried more often.
       const double pick = uniform() * uniform();
       const auto choice = static_cast<std::size_t>(pick * static_cast<double>(candidates_[label].size()));
-      const double change = cost_of(label, choice) - cost_of(label, choice_[label]);
-      if (change <= 0.0 || uniform() < std::exp(-change / heat)) choice_[label] = choice;
+      const double most = cost_[label] - heat * std::log(std::max(uniform(), 1e-300));
+      if (choice == choice_[label] || candidates_[label][choice].cost > most) continue;
+      const double cost = cost_of(label, choice, most);
+      if (cost <= most) move(label, choice, cost);
     }
   }
 
-  const LabelScene& scene_;
+  static constexpr std::size_t kStepsPerLabel = 6000;
+  static constexpr double kHot = 30.0;
+  static constexpr double kCold = 1.0;
+
+  double gap_;
   std::vector<std::vector<Candidate>> candidates_;
   std::vector<std::size_t> choice_;
+  std::vector<double> cost_;  ///< of each label where it is now
+  std::vector<Box> reach_;    ///< of each label where it is now: asked most often, so kept together
 };
 
 double side(const Segment& s, double x, double y) {
@@ -261,6 +333,10 @@ bool crosses(const Segment& segment, const Box& box) {
   const auto holds = [&](double x, double y) {
     return x >= box.left && x <= box.right && y >= box.bottom && y <= box.top;
   };
+  if (std::max(segment.x0, segment.x1) < box.left || std::min(segment.x0, segment.x1) > box.right)
+    return false;
+  if (std::max(segment.y0, segment.y1) < box.bottom || std::min(segment.y0, segment.y1) > box.top)
+    return false;
   if (holds(segment.x0, segment.y0) || holds(segment.x1, segment.y1)) return true;
   return crosses(segment, Segment{box.left, box.bottom, box.right, box.top}) ||
          crosses(segment, Segment{box.left, box.top, box.right, box.bottom});

@@ -52,6 +52,7 @@ void expect_sound(const LabelScene& scene, const std::vector<PlacedLabel>& place
       const double y = std::clamp(other.y, box.bottom, box.top);
       EXPECT_GE(std::hypot(x - other.x, y - other.y), kRadius) << "the label covers a marker";
       if (k == i || !placed[k].placed) continue;
+      EXPECT_FALSE(placed[k].has_leader && crosses(placed[k].leader, box)) << "a leader crosses a label";
       EXPECT_FALSE(overlap(box, box_of(placed[k], other))) << i << " " << k;
     }
   }
@@ -88,14 +89,25 @@ TEST(LabelPlacement, StaysInsideTheFrameAtItsCorners) {
   }
 }
 
-TEST(LabelPlacement, NeverOverlapsAndPlacesUpToFortyLabels) {
-  for (const int labels : {2, 5, 10, 20, 30, 40}) {
+TEST(LabelPlacement, PlacesAllOfThirtyLabelsWithoutOverlap) {
+  for (const int labels : {2, 5, 10, 20, 30}) {
     for (unsigned seed = 0; seed < 5; ++seed) {
       const LabelScene scene = scene_on_a_line(labels, seed);
       const auto placed = place_labels(scene);
       expect_sound(scene, placed);
       EXPECT_EQ(count_placed(placed), static_cast<std::size_t>(labels)) << labels << " labels, seed " << seed;
     }
+  }
+}
+
+// Forty labels of 5 to 12 mm fill a third of the panel that the result's own text leaves, and their points
+// stand on one line: now and then one is better left out than crossed by a leader.
+TEST(LabelPlacement, PlacesNearlyAllOfFortyLabelsWithoutOverlap) {
+  for (unsigned seed = 0; seed < 5; ++seed) {
+    const LabelScene scene = scene_on_a_line(40, seed);
+    const auto placed = place_labels(scene);
+    expect_sound(scene, placed);
+    EXPECT_GE(count_placed(placed), 38U) << "seed " << seed;
   }
 }
 

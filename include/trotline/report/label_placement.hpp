@@ -47,10 +47,10 @@ struct PlacedLabel {
 
 /// Places labels so that none overlaps another, a marker or a forbidden box, and none leaves the frame. A
 /// label stands next to its point where it can, above at the right by preference, and else farther off with a
-/// leader line; one that fits nowhere is left out. Same scene, same placement: the search is an annealing
-/// with a fixed seed (Kirkpatrick, Gelatt & Vecchi 1983, Science 220, 671).
+/// leader line, which crosses no label; one that fits nowhere is left out. Same scene, same placement: the
+/// search is an annealing with a fixed seed (Kirkpatrick, Gelatt & Vecchi 1983, Science 220, 671).
 /// @return one entry a label, in the order given
-/// Cost: grows as the square of the number of labels; 40 labels take some milliseconds.
+/// Cost: grows as the square of the number of labels; 40 crowded ones take about a tenth of a second.
 [[nodiscard]] std::vector<PlacedLabel> place_labels(const LabelScene& scene);
 
 /// True when the interiors of two boxes meet.

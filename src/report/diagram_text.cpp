@@ -1,0 +1,70 @@
+#include <fmt/format.h>
+
+#include <cmath>
+
+#include <trotline/report/diagram_text.hpp>
+#include <trotline/report/rounding.hpp>
+
+namespace trotline {
+namespace {
+
+std::string temperature_text(const Result& result) {
+  const Estimate& t = result.temperature_k;
+  if (result.temperature_fixed) return "T = " + value_with_error(t.value, 0.0) + " K (stated)";
+  return "T = " + value_with_error(t.value, t.error) + " K";
+}
+
+std::string column_text(const Result& result) {
+  const Estimate& n = result.column_density_cm2;
+  return "N = " + value_with_error(n.value, n.error) + " cm⁻²";
+}
+
+std::string p_text(double p) {
+  if (p == 0.0) return "p < 10⁻³⁰⁰";
+  return "p = " + (p >= 0.01 ? fmt::format("{:.2f}", p) : significant(p, 1));
+}
+
+std::vector<std::string> goodness(const Result& result) {
+  if (!std::isfinite(result.chi2)) return {};
+  if (result.dof <= 0) return {"no degree of freedom left"};
+  std::string text = fmt::format("χ²/dof = {}/{}", significant(result.chi2, 2), result.dof);
+  if (std::isfinite(result.p_value)) text += ", " + p_text(result.p_value);
+  return {text};
+}
+
+/// N over the temperatures for which it is given.
+DiagramAnswer for_one_line(const Result& result) {
+  DiagramAnswer said{{"one line: no temperature"}, {}};
+  if (result.columns_at_temperatures.empty()) return said;
+  const ColumnAtTemperature& first = result.columns_at_temperatures.front();
+  const ColumnAtTemperature& last = result.columns_at_temperatures.back();
+  const auto entry = [](const ColumnAtTemperature& at) {
+    return "N(" + value_with_error(at.temperature_k, 0.0) + " K) = " + significant(at.column_density_cm2, 2) +
+           " cm⁻²";
+  };
+  said.detail.push_back(entry(first));
+  if (result.columns_at_temperatures.size() > 1) said.detail.push_back(entry(last));
+  return said;
+}
+
+}  // namespace
+
+DiagramAnswer diagram_answer(const Result& result) {
+  switch (result.status) {
+    case Status::done:
+      return {{temperature_text(result), column_text(result)}, goodness(result)};
+    case Status::unbounded:
+      return {{temperature_text(result)}, {"outside the range of Q(T)"}};
+    case Status::one_line:
+      return for_one_line(result);
+    case Status::not_thermal:
+      return {{"no temperature"}, {"the points do not fall with energy"}};
+    case Status::only_limits:
+      return {{"upper limits only"}, {}};
+    case Status::not_converged:
+      return {{"fit not converged"}, {}};
+  }
+  return {};
+}
+
+}  // namespace trotline

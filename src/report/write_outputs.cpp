@@ -1,0 +1,19 @@
+#include <trotline/report/ecsv.hpp>
+#include <trotline/report/json.hpp>
+#include <trotline/report/terminal.hpp>
+#include <trotline/report/write_outputs.hpp>
+
+namespace trotline {
+
+void write_outputs(const Result& result, OutputFolder& folder, const OutputOptions& options) {
+  folder.write("result.json", result_json(result));
+  folder.write("lines.ecsv", lines_ecsv(result));
+  folder.write("report.txt", terminal_report(result, {.width = options.report_width}));
+  if (options.formats.empty()) return;
+  DiagramOptions diagram;
+  diagram.formats = options.formats;
+  diagram.size = options.figure_size;
+  write_diagram(result, folder.staging(), diagram);
+}
+
+}  // namespace trotline
