@@ -1,0 +1,111 @@
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <map>
+
+#include <trotline/analysis/analyse.hpp>
+#include <trotline/base/errors.hpp>
+#include <trotline/base/files.hpp>
+#include <trotline/base/text.hpp>
+#include <trotline/report/json.hpp>
+#include <trotline/report/terminal.hpp>
+#include <trotline/report/write_outputs.hpp>
+
+#include "command_line.hpp"
+#include "verbs.hpp"
+
+namespace trotline {
+namespace {
+
+std::string with(char to, std::string text, char from) {
+  std::replace(text.begin(), text.end(), from, to);
+  return text;
+}
+
+CommandSyntax syntax() {
+  CommandSyntax syntax{"fit", "LINES", true, {"species", "out", "figures"}, {"json", "help"}};
+  for (const RunOption& option : run_option_table()) syntax.values.push_back(with('-', option.key, '_'));
+  return syntax;
+}
+
+bool is_description(const std::string& path) { return path.ends_with(".yaml") || path.ends_with(".yml"); }
+
+void set_from_command_line(RunOptions& options, const std::string& name, const std::string& value) {
+  try {
+    find_run_option(with('_', name, '-'))->set(options, value);
+  } catch (const InputError& error) {
+    throw UsageError(fmt::format("--{}: {}", name, error.what()));
+  }
+}
+
+/// The description of the file or of the table named, with the options of the command line laid over it.
+RunDescription description_of(const ParsedCommand& command) {
+  RunDescription run;
+  if (is_description(command.positional)) {
+    run = read_run_description(command.positional);
+  } else {
+    run.table = command.positional;
+  }
+  for (const auto& [name, value] : command.values) {
+    if (name == "out" || name == "figures") continue;
+    if (name == "species") {
+      run.species = value;
+      continue;
+    }
+    set_from_command_line(run.options, name, value);
+  }
+  if (run.species.empty()) throw UsageError("no species is given; add --species, as in '--species CO'");
+  return run;
+}
+
+std::vector<FigureFormat> figure_formats(const std::string& text) {
+  if (text == "none") return {};
+  std::vector<FigureFormat> formats;
+  for (std::size_t start = 0; start <= text.size();) {
+    const std::size_t comma = std::min(text.find(',', start), text.size());
+    const std::string word = lower_case(trimmed(std::string_view(text).substr(start, comma - start)));
+    const std::map<std::string, FigureFormat> known = {
+        {"svg", FigureFormat::svg}, {"pdf", FigureFormat::pdf}, {"png", FigureFormat::png}};
+    if (!known.contains(word)) {
+      throw UsageError(fmt::format("--figures: there is no figure format '{}'; expected a list of svg, pdf, png, or none",
+                                   printable(word)));
+    }
+    formats.push_back(known.at(word));
+    start = comma + 1;
+  }
+  return formats;
+}
+
+OutputOptions output_options(const ParsedCommand& command) {
+  OutputOptions options;
+  for (const auto& [name, value] : command.values) {
+    if (name == "figures") options.formats = figure_formats(value);
+  }
+  return options;
+}
+
+void write_folder(const Result& result, const std::string& folder, const OutputOptions& options,
+                  const Console& console) {
+  OutputFolder output(folder);
+  write_outputs(result, output, options);
+  const auto names = output.commit();
+  console.err << fmt::format("trotline: wrote {} to {}\n", listed(names, names.size()), folder);
+}
+
+}  // namespace
+
+ExitCode run_fit(const std::vector<std::string>& arguments, const Console& console) {
+  const ParsedCommand command = parse_command(syntax(), arguments);
+  const OutputOptions outputs = output_options(command);
+  const RunDescription run = description_of(command);
+  const Result result = analyse(run, SpeciesLibrary(SpeciesLibrary::standard_folders()));
+  if (!command.value("out").empty()) write_folder(result, command.value("out"), outputs, console);
+  if (command.flags.at("json")) {
+    console.out << result_json(result);
+  } else {
+    console.out << terminal_report(result, {static_cast<std::size_t>(console.width), console.colour, console.unicode});
+  }
+  return result.status == Status::done ? ExitCode::done : ExitCode::no_answer;
+}
+
+}  // namespace trotline
