@@ -17,12 +17,17 @@ namespace trotline {
 namespace {
 
 constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
+constexpr double kStrikingSigma = 3.0;
 constexpr double kLeastPlainSnr = 5.0;      // below it the logarithm's bias sigma^2/2W^2 exceeds 2 %
 
 void warn_about_lines(Result& result, const std::vector<PreparedLine>& lines) {
   std::vector<std::string> weak;
+  std::vector<std::string> negative;
   std::map<std::string, int> times;
   for (const PreparedLine& line : lines) {
+    if (line.result.intensity_k_km_s < -kStrikingSigma * line.result.intensity_error_k_km_s) {
+      negative.push_back(line.result.transition);
+    }
     if (!line.result.used) continue;
     if (line.result.intensity_k_km_s < kLeastPlainSnr * line.result.intensity_error_k_km_s) {
       weak.push_back(line.result.transition);
@@ -33,6 +38,11 @@ void warn_about_lines(Result& result, const std::vector<PreparedLine>& lines) {
     result.warnings.push_back(fmt::format("below S/N {:g}, where the logarithm of an intensity is biased low by "
                                           "half its squared relative error: {}",
                                           kLeastPlainSnr, fmt::join(weak, ", ")));
+  }
+  if (!negative.empty()) {
+    result.warnings.push_back(fmt::format("negative by more than {:g} of its errors, which noise does not do; look for "
+                                          "a baseline or a line of the reference position: {}",
+                                          kStrikingSigma, fmt::join(negative, ", ")));
   }
   for (const auto& [transition, count] : times) {
     if (count > 1) {

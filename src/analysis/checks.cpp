@@ -12,6 +12,7 @@ namespace {
 constexpr double kLeastPValue = 0.01;
 // At tau0 = 0.3 the Gaussian curve of growth takes 10 % off a line (PHYSICS: C = 1.10).
 constexpr double kThinOpacity = 0.3;
+constexpr double kMostRelativeError = 0.5;
 
 Check goodness_of_fit(const Result& result) {
   Check check{"goodness of fit", result.p_value, Outcome::not_testable,
@@ -20,6 +21,25 @@ Check goodness_of_fit(const Result& result) {
   check.outcome = result.p_value >= kLeastPValue ? Outcome::pass : Outcome::fail;
   check.meaning = fmt::format("chance alone would scatter the lines more than this with probability {:.2g}",
                               result.p_value);
+  return check;
+}
+
+/// Whether the data set T at all: with an open interval, or an error of the size of T, every model would do.
+Check temperature_set(const Result& result) {
+  const Estimate& t = result.temperature_k;
+  Check check{"temperature set by the data", kNotKnown, Outcome::not_testable, "T is given, not fitted"};
+  if (result.temperature_fixed) return check;
+  check.meaning = "there is no temperature";
+  if (std::isnan(t.value) || std::isnan(t.error)) return check;
+  check.figure = t.error / t.value;
+  if (std::isnan(t.high95)) {
+    check.meaning = "within 95 % the slope may be flat: the data bound T from below only";
+  } else if (check.figure > kMostRelativeError) {
+    check.meaning = "the error of T is as large as T itself";
+  } else {
+    check.outcome = Outcome::pass;
+    check.meaning = fmt::format("T is known to {:.2g} %", 100.0 * check.figure);
+  }
   return check;
 }
 
@@ -67,14 +87,16 @@ std::string verdict_of(const Result& result) {
   if (!failed.empty()) {
     return fmt::format("one thin temperature does not describe the lines (failed: {})", fmt::join(failed, ", "));
   }
-  if (result.checks.front().outcome == Outcome::not_testable) return "these lines cannot tell";
+  const bool fit_testable = result.checks[0].outcome != Outcome::not_testable;
+  const bool is_set = result.temperature_fixed || result.checks[1].outcome == Outcome::pass;
+  if (!fit_testable || !is_set) return "these lines cannot tell";
   return "one temperature describes the lines";
 }
 
 }  // namespace
 
 void check_assumptions(Result& result) {
-  result.checks = {goodness_of_fit(result), limits_kept(result), thin_lines(result)};
+  result.checks = {goodness_of_fit(result), temperature_set(result), limits_kept(result), thin_lines(result)};
   result.verdict = result.status == Status::done ? verdict_of(result) : "these lines cannot tell";
 }
 

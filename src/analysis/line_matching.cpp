@@ -137,7 +137,13 @@ MatchedTable match_rows(const IntensityTable& table, const Species& species, dou
     matched.warnings.push_back(fmt::format("{} rows of other species were passed over ({})",
                                            table.rows.size() - rows.size(), listed({others.begin(), others.end()})));
   }
-  for (const IntensityRow* row : rows_of_source(table, rows, wanted_source, matched.source)) {
+  const auto chosen = rows_of_source(table, rows, wanted_source, matched.source);
+  if (chosen.size() > kMostRowsOfASource) {
+    throw InputError(Place{table.file}, {fmt::format("holds {} rows of one source and species", chosen.size()),
+                                         fmt::format("at most {}", kMostRowsOfASource),
+                                         "name the sources in a column 'source' if there are several"});
+  }
+  for (const IntensityRow* row : chosen) {
     const Place place{table.file, row->line_number};
     const std::size_t transition = row->transition ? match_label(*row, place, species, frequency_tolerance_hz)
                                                    : match_frequency(*row, place, species, frequency_tolerance_hz);

@@ -2,7 +2,9 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
+#include <iterator>
 #include <numbers>
 
 #include <trotline/base/errors.hpp>
@@ -141,12 +143,15 @@ void fill_done(Result& result, std::vector<PreparedLine>& lines, const DiagramDa
   }
 }
 
-/// N, or its limit, at a few temperatures: all that one line, or limits alone, can say.
+/// N, or its limit, at the given temperature or at a few: all that one line, or limits alone, can say.
 void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines, const PartitionFunction& partition,
-                      double background_k, bool from_limits) {
-  for (const double t : kTemperaturesForOneLine) {
+                      const RunOptions& options, bool from_limits) {
+  const double background_k = options.background_k;
+  std::vector<double> temperatures_k(std::begin(kTemperaturesForOneLine), std::end(kTemperaturesForOneLine));
+  if (options.temperature_k) temperatures_k = {*options.temperature_k};
+  for (const double t : temperatures_k) {
     if (t <= 1.05 * background_k || t < partition.lowest_k() || t > partition.highest_k()) continue;
-    ColumnAtTemperature column{t, kNotKnown, kNotKnown};
+    ColumnAtTemperature column{t, kNotKnown, kNotKnown, from_limits};
     for (const PreparedLine& line : lines) {
       const bool serves = from_limits ? line.result.limit && line.result.intensity_k_km_s > 0.0 : line.result.used;
       const double contrast = background_contrast(line.constants.frequency_hz, t, background_k);
@@ -159,6 +164,21 @@ void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines, co
     }
     result.columns_at_temperatures.push_back(column);
   }
+}
+
+void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
+                        const PartitionFunction& partition, const RunOptions& options) {
+  const bool any_limit = std::any_of(lines.begin(), lines.end(), [](const PreparedLine& line) {
+    return line.result.limit && line.result.intensity_k_km_s > 0.0;
+  });
+  if (!any_limit) {
+    result.status = Status::no_lines;
+    result.message = "the reasons stand beside the lines that are not used";
+    return;
+  }
+  result.status = Status::only_limits;
+  result.message = "at each temperature listed, N stays below the limit beside it";
+  tabulate_columns(result, lines, partition, options, true);
 }
 
 /// The temperature is given: N alone is fitted.
@@ -210,7 +230,7 @@ void fit_both(Result& result, std::vector<PreparedLine>& lines, const DiagramDat
     result.message = "all lines have the same upper energy: no temperature; give 'temperature' for N";
     return;
   }
-  set_diagram_line(result, fit);
+  if (fit.status != ThermalStatus::no_minimum) set_diagram_line(result, fit);
   const double t = 1.0 / fit.inverse_temperature_per_k;
   if (fit.status == ThermalStatus::not_thermal) {
     say_not_thermal(result, fit);
@@ -233,9 +253,7 @@ void fit_by_straight_line(Result& result, std::vector<PreparedLine>& lines, cons
   const auto used = used_lines(lines);
   const PartitionFunction& partition = *species.partition;
   if (used.empty()) {
-    result.status = Status::only_limits;
-    result.message = "no line can be fitted: at each temperature listed, N stays below the limit beside it";
-    tabulate_columns(result, lines, partition, options.background_k, true);
+    say_nothing_to_fit(result, lines, partition, options);
     return;
   }
   const DiagramData data = diagram_data(lines, used, options);
@@ -243,8 +261,8 @@ void fit_by_straight_line(Result& result, std::vector<PreparedLine>& lines, cons
     fit_column(result, lines, data, species, *options.temperature_k);
   } else if (used.size() == 1) {
     result.status = Status::one_line;
-    result.message = "one line gives no temperature: N is listed for several; or give 'temperature'";
-    tabulate_columns(result, lines, partition, options.background_k, false);
+    result.message = "N is listed for several temperatures; or give the option 'temperature'";
+    tabulate_columns(result, lines, partition, options, false);
   } else {
     fit_both(result, lines, data, partition);
   }

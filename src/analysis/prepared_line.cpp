@@ -61,6 +61,21 @@ double filling_of(const IntensityRow& row, const RunOptions& options, const Plac
                                                    : gaussian_filling(*options.source_size_rad, beam);
 }
 
+/// Intensities that no telescope gives, and whose squares would leave the range of a double, are a slip of unit
+/// or of typing.
+void require_plausible(const LineResult& line, const Place& place) {
+  constexpr double kLeast = 1e-12;
+  constexpr double kMost = 1e12;
+  const double w = std::abs(line.intensity_k_km_s);
+  const double sigma = line.intensity_error_k_km_s;
+  const auto refuse = [&](const char* what, double value) {
+    throw InputError(place, {fmt::format("{} of {:g} K km/s on the main-beam scale", what, value),
+                             fmt::format("{:g} to {:g} K km/s", kLeast, kMost), "check value and unit"});
+  };
+  if (w != 0.0 && !(w >= kLeast && w <= kMost)) refuse("an intensity", line.intensity_k_km_s);
+  if (!std::isnan(sigma) && !(sigma >= kLeast && sigma <= kMost)) refuse("an intensity error", sigma);
+}
+
 bool is_listed(const std::vector<std::string>& labels, const std::string& transition) {
   return std::any_of(labels.begin(), labels.end(), [&](const std::string& label) {
     return normalised_label(label) == normalised_label(transition);
@@ -117,6 +132,7 @@ PreparedLine prepare(const MatchedRow& matched, const Species& species, const Ru
   const double factor = main_beam_factor(row, transition.frequency_hz, options, place);
   result.intensity_k_km_s = row.intensity * factor;
   result.intensity_error_k_km_s = row.intensity_sigma * factor;
+  require_plausible(result, place);
   result.calibration_error = row.calibration_error.value_or(options.calibration_error.value_or(0.0));
   result.calibration_group = row.calibration_group.value_or("");
   result.limit = row.is_limit;

@@ -12,6 +12,8 @@ const char* name_of(Status status) {
       return "not thermal";
     case Status::only_limits:
       return "only limits";
+    case Status::no_lines:
+      return "no lines";
     case Status::unbounded:
       return "unbounded";
     case Status::not_converged:

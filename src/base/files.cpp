@@ -8,10 +8,13 @@
 #include <algorithm>
 #include <array>
 #include <cerrno>
+#include <csignal>
 #include <cstdlib>
 #include <cstring>
 #include <fstream>
 #include <iostream>
+#include <mutex>
+#include <set>
 #include <sstream>
 #include <system_error>
 
@@ -90,6 +93,32 @@ void make_folder(const fs::path& folder) {
   if (error) throw SystemError(fmt::format("{}: cannot make the folder: {}", folder.string(), error.message()));
 }
 
+/// The hidden folders of this process, for abandon_output_folders().
+struct StagingRegistry {
+  std::mutex mutex;
+  std::set<fs::path> folders;
+};
+
+StagingRegistry& registry() {
+  static StagingRegistry instance;
+  return instance;
+}
+
+const std::string kStagingPrefix = ".making-";
+
+/// Removes what killed processes have left: the name holds the process, and it runs no more.
+void remove_stale_staging(const fs::path& target) {
+  std::error_code ignored;
+  for (const auto& entry : fs::directory_iterator(target, ignored)) {
+    const std::string name = entry.path().filename().string();
+    if (!name.starts_with(kStagingPrefix)) continue;
+    const std::string digits = name.substr(kStagingPrefix.size(), name.rfind('-') - kStagingPrefix.size());
+    const auto process = parse_whole_number(digits);
+    const bool gone = process && *process > 0 && ::kill(static_cast<pid_t>(*process), 0) != 0 && errno == ESRCH;
+    if (gone) fs::remove_all(entry.path(), ignored);
+  }
+}
+
 bool is_device_name(const std::string& name) {
   static const std::vector<std::string> kDevices = {"con", "prn", "aux", "nul"};
   const std::string stem = lower_case(name.substr(0, name.find('.')));
@@ -123,18 +152,23 @@ OutputFolder::OutputFolder(fs::path target) : target_(std::move(target)) {
   }
   made_target_ = !fs::exists(target_, error);
   make_folder(target_);
-  std::string name = (target_ / ".making-XXXXXX").string();
+  remove_stale_staging(target_);
+  std::string name = (target_ / fmt::format("{}{}-XXXXXX", kStagingPrefix, ::getpid())).string();
   if (::mkdtemp(name.data()) == nullptr) {
     const int reason = errno;
     if (made_target_) fs::remove(target_, error);
     refuse(target_, "write to the folder", reason);
   }
   staging_ = name;
+  const std::scoped_lock lock(registry().mutex);
+  registry().folders.insert(staging_);
 }
 
 OutputFolder::~OutputFolder() {
   std::error_code ignored;
   fs::remove_all(staging_, ignored);
+  const std::scoped_lock lock(registry().mutex);
+  registry().folders.erase(staging_);
   if (made_target_ && !committed_) fs::remove(target_, ignored);  // only where it is empty
 }
 
@@ -156,6 +190,16 @@ std::vector<std::string> OutputFolder::commit() {
   }
   committed_ = true;
   return names;
+}
+
+void abandon_output_folders() {
+  const std::scoped_lock lock(registry().mutex);
+  std::error_code ignored;
+  for (const fs::path& folder : registry().folders) {
+    fs::remove_all(folder, ignored);
+    fs::remove(folder.parent_path(), ignored);  // only where it is empty
+  }
+  registry().folders.clear();
 }
 
 std::string safe_file_name(std::string_view text) {

@@ -60,7 +60,9 @@ ParsedCommand parse_command(const CommandSyntax& syntax, const std::vector<std::
   }
   for (const std::string& name : syntax.values) {
     if (options[name]->count() > 1) throw UsageError(fmt::format("option '--{}' is given twice", name));
-    if (options[name]->count() == 1) command.values.emplace_back(name, given[name]);
+    if (options[name]->count() == 0) continue;
+    if (trimmed(given[name]).empty()) throw UsageError(fmt::format("option '--{}' is given an empty value", name));
+    command.values.emplace_back(name, given[name]);
   }
   return command;
 }

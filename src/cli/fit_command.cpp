@@ -12,6 +12,7 @@
 #include <trotline/report/write_outputs.hpp>
 
 #include "command_line.hpp"
+#include "interrupts.hpp"
 #include "verbs.hpp"
 
 namespace trotline {
@@ -87,7 +88,12 @@ OutputOptions output_options(const ParsedCommand& command) {
 void write_folder(const Result& result, const std::string& folder, const OutputOptions& options,
                   const Console& console) {
   OutputFolder output(folder);
-  write_outputs(result, output, options);
+  try {
+    write_outputs(result, output, options);
+  } catch (const SystemError& error) {
+    if (options.formats.empty()) throw;
+    throw SystemError(fmt::format("{}; with '--figures none' everything but the figures is written", error.what()));
+  }
   const auto names = output.commit();
   console.err << fmt::format("trotline: wrote {} to {}\n", listed(names, names.size()), folder);
 }
@@ -96,6 +102,7 @@ void write_folder(const Result& result, const std::string& folder, const OutputO
 
 ExitCode run_fit(const std::vector<std::string>& arguments, const Console& console) {
   const ParsedCommand command = parse_command(syntax(), arguments);
+  if (console.owns_process) clean_up_when_stopped();
   const OutputOptions outputs = output_options(command);
   const RunDescription run = description_of(command);
   const Result result = analyse(run, SpeciesLibrary(SpeciesLibrary::standard_folders()));

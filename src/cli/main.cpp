@@ -34,6 +34,7 @@ int main(int argc, char** argv) {
   if (terminal && ioctl(STDOUT_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0) console.width = size.ws_col;
   console.colour = terminal && !is_set("NO_COLOR");
   console.unicode = !terminal || locale_is_utf8();
+  console.owns_process = true;
   const std::vector<std::string> arguments(argv + 1, argv + argc);
   return static_cast<int>(trotline::run_program(arguments, console));
 }

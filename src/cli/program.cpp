@@ -59,7 +59,9 @@ ExitCode dispatch(const std::vector<std::string>& arguments, const Console& cons
 }
 
 ExitCode say(const Console& console, const std::string& message, ExitCode code) {
-  console.err << "trotline: " << printable(message) << '\n';
+  constexpr std::size_t kMostBytes = 2000;  // a value of an option may be of any length
+  const bool is_long = message.size() > kMostBytes;
+  console.err << "trotline: " << printable(message.substr(0, kMostBytes)) << (is_long ? " ..." : "") << '\n';
   return code;
 }
 

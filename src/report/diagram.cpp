@@ -87,8 +87,9 @@ void draw(const fs::path& folder, const DiagramOptions& options) {
     std::error_code error;
     const auto size = fs::file_size(folder / figure_name(format), error);
     if (error || size == 0) {
+      const std::string said = message_of(outcome.output);
       throw SystemError(fmt::format("{}: {} was not drawn: {}", options.program, figure_name(format),
-                                    message_of(outcome.output)));
+                                    said.empty() ? "it gave no reason; is the disk full?" : said));
     }
   }
 }

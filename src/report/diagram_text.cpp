@@ -8,14 +8,22 @@
 namespace trotline {
 namespace {
 
+/// Where the data set no upper bound, the lower one says more than a value with an error beyond it.
+bool is_bounded(const Result& result) {
+  return result.temperature_fixed || std::isfinite(result.temperature_k.high68) ||
+         !std::isfinite(result.temperature_k.low68);
+}
+
 std::string temperature_text(const Result& result) {
   const Estimate& t = result.temperature_k;
   if (result.temperature_fixed) return "T = " + value_with_error(t.value, 0.0) + " K (stated)";
+  if (!is_bounded(result)) return "T > " + significant(t.low68, 2) + " K (68 %)";
   return "T = " + value_with_error(t.value, t.error) + " K";
 }
 
 std::string column_text(const Result& result) {
   const Estimate& n = result.column_density_cm2;
+  if (!is_bounded(result) && std::isfinite(n.low68)) return "N > " + significant(n.low68, 2) + " cm⁻² (68 %)";
   return "N = " + value_with_error(n.value, n.error) + " cm⁻²";
 }
 
@@ -61,6 +69,8 @@ DiagramAnswer diagram_answer(const Result& result) {
       return {{"no temperature"}, {"the points do not fall with energy"}};
     case Status::only_limits:
       return {{"upper limits only"}, {}};
+    case Status::no_lines:
+      return {{"no line left to fit"}, {}};
     case Status::not_converged:
       return {{"fit not converged"}, {}};
   }

@@ -56,6 +56,7 @@ Json json_of(const DiagramLine& line) {
 Json json_of(const ColumnAtTemperature& row) {
   return {{"temperature_k", row.temperature_k},
           {"column_density_cm2", row.column_density_cm2},
+          {"upper_limit", row.upper_limit},
           {"error_cm2", row.error_cm2}};
 }
 

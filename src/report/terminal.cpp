@@ -195,11 +195,13 @@ std::string headline(Status status) {
     case Status::done:
       return {};
     case Status::one_line:
-      return "One line only: no temperature. N for a range of temperatures:";
+      return "One line only: no temperature.";
     case Status::not_thermal:
       return "No temperature: ln(N_u/g_u) does not fall with E_u.";
     case Status::only_limits:
-      return "No line is detected: no temperature and no column density.";
+      return "No line is detected: no temperature, and limits of N.";
+    case Status::no_lines:
+      return "No line is left to fit.";
     case Status::unbounded:
       return "The temperature lies outside the range for which Q(T) is known.";
     case Status::not_converged:
@@ -226,7 +228,9 @@ void add_columns_at_temperatures(Page& page, const Result& result) {
   TextColumn column{page.pick("N [cm⁻²]", "N [cm^-2]"), {}, false};
   for (const ColumnAtTemperature& row : result.columns_at_temperatures) {
     temperature.cells.push_back(value_with_error(row.temperature_k, 0.0, page.glyphs()));
-    column.cells.push_back(value_with_error(row.column_density_cm2, row.error_cm2, page.glyphs()));
+    column.cells.push_back(row.upper_limit
+                               ? "< " + significant(row.column_density_cm2, 2, page.glyphs())
+                               : value_with_error(row.column_density_cm2, row.error_cm2, page.glyphs()));
   }
   for (const std::string& line :
        text_table({temperature, column}, page.width() - kLabelWidth, page.glyphs())) {
@@ -241,7 +245,7 @@ void add_answer(Page& page, const Result& result) {
   const bool has_numbers =
       std::isfinite(result.temperature_k.value) || std::isfinite(result.column_density_cm2.value);
   if (result.status == Status::done || has_numbers) add_estimates(page, result);
-  if (result.status == Status::one_line) add_columns_at_temperatures(page, result);
+  add_columns_at_temperatures(page, result);
   if (result.status == Status::not_thermal || result.status == Status::unbounded) {
     add_slope(page, result.diagram_line);
   }

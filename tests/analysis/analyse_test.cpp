@@ -6,6 +6,7 @@
 #include <cmath>
 #include <numbers>
 
+#include <trotline/analysis/line_matching.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/excitation/thin_line.hpp>
 
@@ -199,10 +200,10 @@ TEST(Analyse, ComparesLimitsWithTheModelAndDoesNotFitThem) {
   const Result kept = analyse(species, table, {});
   EXPECT_EQ(kept.dof, 3);
   EXPECT_FALSE(kept.lines[5].used);
-  EXPECT_EQ(kept.checks[1].outcome, Outcome::pass);
+  EXPECT_EQ(kept.checks[2].outcome, Outcome::pass);
   table.rows[5].intensity /= 30.0;
   const Result broken = analyse(species, table, {});
-  EXPECT_EQ(broken.checks[1].outcome, Outcome::fail);
+  EXPECT_EQ(broken.checks[2].outcome, Outcome::fail);
   EXPECT_THAT(broken.verdict, HasSubstr("does not describe"));
   EXPECT_EQ(broken.temperature_k.value, kept.temperature_k.value);
 }
@@ -237,6 +238,64 @@ TEST(Analyse, WhatCannotBeAnsweredHasAStatusOfItsOwn) {
   IntensityTable limits = table_of(species, {}, 4);
   for (auto& row : limits.rows) row.is_limit = true;
   EXPECT_EQ(analyse(species, limits, {}).status, Status::only_limits);
+}
+
+TEST(Analyse, LimitsAloneBoundNAtEachTemperatureOrAtTheGivenOne) {
+  const Species species = rotor();
+  IntensityTable limits = table_of(species, {}, 4);
+  for (auto& row : limits.rows) row.is_limit = true;
+  RunOptions options;
+  options.temperature_k = 40.0;
+  const Result at_truth = analyse(species, limits, options);
+  ASSERT_EQ(at_truth.columns_at_temperatures.size(), 1U);
+  EXPECT_TRUE(at_truth.columns_at_temperatures[0].upper_limit);
+  EXPECT_NEAR(at_truth.columns_at_temperatures[0].column_density_cm2 / 3e13, 1.0, 1e-10);
+}
+
+TEST(Analyse, LinesThatTheOptionsCutAwayAreNotCalledUndetected) {
+  const Species species = rotor();
+  RunOptions options;
+  options.least_snr = 1e9;
+  EXPECT_EQ(analyse(species, table_of(species, {}, 4), options).status, Status::no_lines);
+}
+
+TEST(Analyse, ATemperatureThatTheDataDoNotSetIsNotCalledADescription) {
+  const Species species = rotor();
+  IntensityTable noisy = table_of(species, {}, 3);
+  for (auto& row : noisy.rows) row.intensity_sigma = 0.7 * row.intensity;
+  const Result result = analyse(species, noisy, {});
+  ASSERT_EQ(result.status, Status::done);
+  EXPECT_TRUE(std::isnan(result.temperature_k.high95));
+  EXPECT_EQ(result.verdict, "these lines cannot tell");
+}
+
+TEST(Analyse, ImplausibleIntensitiesAreRefusedWithTheirLine) {
+  const Species species = rotor();
+  for (const double factor : {1e300, 1e-300}) {
+    IntensityTable table = table_of(species, {}, 3);
+    table.rows[1].intensity *= factor;
+    EXPECT_THAT(refusal(table), ::testing::AllOf(HasSubstr("lines.csv:3"), HasSubstr("check value and unit")));
+    table = table_of(species, {}, 3);
+    table.rows[1].intensity_sigma *= factor;
+    EXPECT_THAT(refusal(table), HasSubstr("an intensity error"));
+  }
+  IntensityTable many = table_of(species, {}, 3);
+  many.rows.resize(kMostRowsOfASource + 1, many.rows[0]);
+  EXPECT_THAT(refusal(many), HasSubstr("at most 1000"));
+}
+
+TEST(Analyse, ALineFarBelowZeroIsWarnedOf) {
+  const Species species = rotor();
+  IntensityTable table = table_of(species, {}, 5);
+  table.rows[2].intensity *= -1.0;
+  EXPECT_THAT(analyse(species, table, {}).warnings, ::testing::Contains(HasSubstr("negative by more than 3")));
+}
+
+TEST(Analyse, ATransitionThatStandsTwiceIsWarnedOf) {
+  const Species species = rotor();
+  IntensityTable table = table_of(species, {}, 5);
+  table.rows.push_back(table.rows[2]);
+  EXPECT_THAT(analyse(species, table, {}).warnings, ::testing::Contains(HasSubstr("3-2 stands 2 times")));
 }
 
 TEST(Analyse, OneLineAtItsTrueTemperatureGivesTheTrueN) {

@@ -1,6 +1,7 @@
 #include <gmock/gmock.h>
 #include <gtest/gtest.h>
 #include <sys/stat.h>
+#include <sys/wait.h>
 #include <unistd.h>
 
 #include <fstream>
@@ -175,6 +176,32 @@ TEST_F(Files, SafeNamesOfHostileTextsAreSafeAndDistinct) {
 TEST_F(Files, PlainNamesStayAsTheyAre) {
   for (const char* name : {"CO", "13CO", "HCO+", "c-C3H2", "source_1.a"})
     EXPECT_EQ(safe_file_name(name), name);
+}
+
+TEST(OutputFolder, RemovesWhatAKilledProcessLeftAndNothingElse) {
+  const fs::path target = fs::temp_directory_path() / fmt::format("trotline-stale-{}", ::getpid());
+  const pid_t child = ::fork();
+  if (child == 0) _exit(0);
+  ::waitpid(child, nullptr, 0);  // now a process number that runs no more
+  const fs::path stale = target / fmt::format(".making-{}-abcdef", child);
+  const fs::path alive = target / fmt::format(".making-{}-abcdef", ::getppid());
+  fs::create_directories(stale);
+  fs::create_directories(alive);
+  { const OutputFolder folder(target); }
+  EXPECT_FALSE(fs::exists(stale));
+  EXPECT_TRUE(fs::exists(alive));
+  fs::remove_all(target);
+}
+
+TEST(OutputFolder, IsAbandonedWholeWhenTheProgramIsToldToStop) {
+  const fs::path target = fs::temp_directory_path() / fmt::format("trotline-stop-{}", ::getpid());
+  {
+    const OutputFolder folder(target);
+    folder.write("result.json", "{}");
+    abandon_output_folders();
+    EXPECT_FALSE(fs::exists(target));
+  }
+  EXPECT_FALSE(fs::exists(target));
 }
 
 }  // namespace

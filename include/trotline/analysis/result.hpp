@@ -27,6 +27,7 @@ enum class Status {
   one_line,     ///< one line and no stated temperature: N(T) over a range is given, no temperature
   not_thermal,  ///< the slope of the diagram is not negative: no temperature
   only_limits,  ///< no line is detected
+  no_lines,     ///< no line is left to fit: the options or the intensities leave none
   unbounded,    ///< a temperature, but outside the range for which the species has a Q(T)
   not_converged
 };
@@ -83,6 +84,7 @@ struct ColumnAtTemperature {
   double temperature_k = kNotKnown;
   double column_density_cm2 = kNotKnown;
   double error_cm2 = kNotKnown;
+  bool upper_limit = false;  ///< N is below column_density_cm2, not equal to it
 };
 
 struct Provenance {

@@ -17,7 +17,8 @@ namespace trotline {
 void write_file(const std::filesystem::path& path, std::string_view bytes);
 
 /// A set of files that appear together: they are made in a hidden folder inside `target`, and moved into
-/// `target` one rename each when commit() is called. Without commit() nothing of them stays.
+/// `target` one rename each when commit() is called. Without commit() nothing of them stays; what a process that
+/// was killed has left is removed by the next OutputFolder on the same target.
 class OutputFolder {
  public:
   /// Makes `target` where it is missing. @throws SystemError when it cannot be written to
@@ -42,6 +43,10 @@ class OutputFolder {
   bool made_target_ = false;
   bool committed_ = false;
 };
+
+/// Removes the hidden folders of all OutputFolder objects of this process that are not committed: for a program
+/// that is told to stop. The objects are of no use afterwards.
+void abandon_output_folders();
 
 /// A file name made of `text` that is safe on every file system: letters, digits, `+`, `-`, `_` and `.`
 /// stay, the rest becomes `_`; never empty, never `.` or `..` or a device name, at most 80 bytes. A text

@@ -16,6 +16,7 @@ struct Console {
   int width = 92;     ///< columns
   bool colour = false;
   bool unicode = true;
+  bool owns_process = false;  ///< signals to stop may be handled: nothing but the program runs in the process
 };
 
 /// Runs trotline. @param arguments  without the program's name
