@@ -245,6 +245,11 @@ TEST(Diagram, CanBeDrawnAgainFromItsFolder) {
   EXPECT_TRUE(fs::exists(folder.path() / "diagram.png"));
 }
 
+// Its widths are those that the layout counts with; docs/outputs.md names the package.
+TEST(Diagram, ItsTypefaceIsInstalled) {
+  EXPECT_NE(run_process({"fc-list", ":family=Linux Biolinum O"}).output, "");
+}
+
 TEST(Diagram, StandsFoldersWithHostileNames) {
   const Folder folder;
   const fs::path inside = folder.path() / "a 'b' \"c\" `touch pwned` $HOME ; 星";
