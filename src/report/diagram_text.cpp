@@ -42,7 +42,7 @@ std::vector<std::string> goodness(const Result& result) {
 
 /// N over the temperatures for which it is given.
 DiagramAnswer for_one_line(const Result& result) {
-  DiagramAnswer said{{"one line: no temperature"}, {}};
+  DiagramAnswer said{{"no temperature"}, {"one upper energy only"}};
   if (result.columns_at_temperatures.empty()) return said;
   const ColumnAtTemperature& first = result.columns_at_temperatures.front();
   const ColumnAtTemperature& last = result.columns_at_temperatures.back();

@@ -2,6 +2,8 @@
 
 #include <algorithm>
 #include <cmath>
+#include <utility>
+#include <vector>
 
 #include <trotline/report/display_text.hpp>
 #include <trotline/report/rounding.hpp>
@@ -105,17 +107,25 @@ void add_ranges(Page& page, const Estimate& estimate, const std::string& unit) {
                      range(estimate.low95, estimate.high95));
 }
 
+bool has_range(const Estimate& estimate) {
+  return std::isfinite(estimate.low68) || std::isfinite(estimate.high68) || std::isfinite(estimate.low95) ||
+         std::isfinite(estimate.high95);
+}
+
+/// T and N as far as they are known; of a result that is done, also that they are not.
 void add_estimates(Page& page, const Result& result) {
   const Estimate& t = result.temperature_k;
   const Estimate& n = result.column_density_cm2;
   const Estimate& log_n = result.log10_column_density_cm2;
+  const bool done = result.status == Status::done;
   const char* const per_area = page.pick("cm⁻²", "cm^-2");
   if (result.temperature_fixed) {
     page.entry("T", value_with_error(t.value, 0.0, page.glyphs()) + " K, stated and not fitted", kBold);
-  } else {
+  } else if (done || std::isfinite(t.value)) {
     page.entry("T_rot", with_unit(value_with_error(t.value, t.error, page.glyphs()), "K"), kBold);
-    add_ranges(page, t, "K");
+    if (done || has_range(t)) add_ranges(page, t, "K");
   }
+  if (!done && !std::isfinite(n.value)) return;
   page.entry("N_tot", with_unit(value_with_error(n.value, n.error, page.glyphs()), per_area), kBold);
   add_ranges(page, n, per_area);
   page.entry("log10 N", value_with_error(log_n.value, log_n.error, page.glyphs()));
@@ -128,8 +138,8 @@ std::string p_value_text(double p, const Page& page) {
 }
 
 std::string scatter_text(double p) {
-  constexpr double kSmall = 0.05;
-  constexpr double kLarge = 0.95;
+  constexpr double kSmall = 0.01;  // common practice
+  constexpr double kLarge = 0.99;
   if (p < kSmall) return ": the lines scatter more than their errors allow";
   if (p > kLarge) return ": the lines scatter less than their errors say";
   return ": the scatter is what the errors allow";
@@ -195,7 +205,7 @@ std::string headline(Status status) {
     case Status::done:
       return {};
     case Status::one_line:
-      return "One line only: no temperature.";
+      return "No temperature: one line, or lines of one upper energy.";
     case Status::not_thermal:
       return "No temperature: ln(N_u/g_u) does not fall with E_u.";
     case Status::only_limits:
@@ -222,6 +232,7 @@ void add_slope(Page& page, const DiagramLine& line) {
   page.entry("slope", text);
 }
 
+/// N at stated temperatures; where no line is detected it is the limit on N.
 void add_columns_at_temperatures(Page& page, const Result& result) {
   if (result.columns_at_temperatures.empty()) return;
   TextColumn temperature{"T [K]", {}};
@@ -242,9 +253,7 @@ void add_answer(Page& page, const Result& result) {
   if (result.status != Status::done) page.line("  " + headline(result.status), kYellow);
   const std::string message = display_text(result.message);
   if (!message.empty()) page.entry("", message);
-  const bool has_numbers =
-      std::isfinite(result.temperature_k.value) || std::isfinite(result.column_density_cm2.value);
-  if (result.status == Status::done || has_numbers) add_estimates(page, result);
+  add_estimates(page, result);
   add_columns_at_temperatures(page, result);
   if (result.status == Status::not_thermal || result.status == Status::unbounded) {
     add_slope(page, result.diagram_line);
@@ -268,7 +277,9 @@ std::string model_text(const LineResult& line, const Page& page) {
   return plain ? pair.substr(0, pair.find(' ')) : significant(model, 3, page.glyphs());
 }
 
-bool is_broken(const LineResult& line) { return line.limit && line.residual_sigma < 0.0; }
+bool is_broken(const LineResult& line) {
+  return line.limit && line.model_intensity_k_km_s > line.intensity_k_km_s;
+}
 
 std::string mark_of(const LineResult& line) {
   if (line.limit) return is_broken(line) ? "limit !" : "limit";
@@ -326,18 +337,30 @@ void add_lines(Page& page, const Result& result) {
   }
 }
 
-void add_unused(Page& page, const Result& result) {
-  bool first = true;
+/// Lines by the reason for which they were left out, in the order in which the reasons come up.
+std::vector<std::pair<std::string, std::string>> unused_by_reason(const Result& result, const Page& page) {
+  std::vector<std::pair<std::string, std::string>> reasons;
   for (const LineResult& line : result.lines) {
     if (line.used || (line.limit && line.why_unused.empty())) continue;
-    if (first) page.heading("Not used");
-    first = false;
+    const std::string why = line.why_unused.empty() ? "no reason given" : display_text(line.why_unused);
     const std::string where = line.table_line > 0 ? fmt::format(" (table line {})", line.table_line) : "";
-    const std::string why = display_text(line.why_unused);
-    page.item("-",
-              transition_of(line.transition, page) + where + ": " + (why.empty() ? "no reason given" : why),
-              kDim);
+    const std::string name = transition_of(line.transition, page) + where;
+    const auto known =
+        std::find_if(reasons.begin(), reasons.end(), [&](const auto& r) { return r.first == why; });
+    if (known == reasons.end()) {
+      reasons.emplace_back(why, name);
+    } else {
+      known->second += ", " + name;
+    }
   }
+  return reasons;
+}
+
+void add_unused(Page& page, const Result& result) {
+  const auto reasons = unused_by_reason(result, page);
+  if (reasons.empty()) return;
+  page.heading("Not used");
+  for (const auto& [why, lines] : reasons) page.item("-", why + ": " + lines, kDim);
 }
 
 void add_checks(Page& page, const Result& result) {

@@ -214,9 +214,10 @@ TEST(DiagramText, GivesTemperatureAndColumnWithErrors) {
 }
 
 TEST(DiagramText, SaysForEveryStatusWhyThereIsNoTemperature) {
-  EXPECT_THAT(diagram_answer(one_line_result()).answer, ElementsAre("one line: no temperature"));
-  EXPECT_THAT(diagram_answer(one_line_result()).detail,
-              ElementsAre("N(10 K) = 3.5 × 10¹³ cm⁻²", "N(300 K) = 5.7 × 10¹⁵ cm⁻²"));
+  EXPECT_THAT(diagram_answer(one_line_result()).answer, ElementsAre("no temperature"));
+  EXPECT_THAT(
+      diagram_answer(one_line_result()).detail,
+      ElementsAre("one upper energy only", "N(10 K) = 3.5 × 10¹³ cm⁻²", "N(300 K) = 5.7 × 10¹⁵ cm⁻²"));
   EXPECT_THAT(diagram_answer(not_thermal_result()).answer, ElementsAre("no temperature"));
   EXPECT_THAT(diagram_answer(only_limits_result()).answer, ElementsAre("upper limits only"));
   EXPECT_THAT(diagram_answer(Result{}).answer, ElementsAre("fit not converged"));

@@ -74,14 +74,30 @@ TEST(TerminalReport, SaysWhatTheNumbersRestOn) {
 
 TEST(TerminalReport, WordsEveryStatusApart) {
   const auto results = results_of_every_kind();
-  EXPECT_THAT(terminal_report(results[1]), AllOf(HasSubstr("One line only"), HasSubstr("T [K]"),
-                                                 HasSubstr("(1.81 ± 0.15) × 10¹⁴"), Not(HasSubstr("T_rot"))));
+  EXPECT_THAT(terminal_report(results[1]),
+              AllOf(HasSubstr("the lines have one upper energy"), HasSubstr("T [K]"),
+                    HasSubstr("(1.81 ± 0.15) × 10¹⁴"), Not(HasSubstr("T_rot"))));
   EXPECT_THAT(terminal_report(results[2]),
               AllOf(HasSubstr("does not fall with E_u"),
                     HasSubstr("0.00120 ± 0.00080 per K, 1.5 errors above zero"), Not(HasSubstr("T_rot"))));
   EXPECT_THAT(terminal_report(results[3]), AllOf(HasSubstr("No line is detected"), Not(HasSubstr("T_rot"))));
   EXPECT_THAT(terminal_report(results[4]), AllOf(HasSubstr("outside the range"), HasSubstr("T_rot")));
   EXPECT_THAT(terminal_report(results[5]), AllOf(HasSubstr("did not converge"), Not(HasSubstr("T_rot"))));
+}
+
+TEST(TerminalReport, GivesLimitsOnTheColumnWhereNothingIsDetected) {
+  Result result = only_limits_result();
+  result.columns_at_temperatures = {{20.0, 3.46e13, kNotKnown}};
+  EXPECT_THAT(terminal_report(result), HasSubstr("< 3.5 × 10¹³"));
+}
+
+TEST(TerminalReport, GivesATemperatureOutsideTheRangeOfQWithoutInventingAColumn) {
+  Result result = invented_result();
+  result.status = Status::unbounded;
+  result.temperature_k = {480.2, 31.4};
+  result.column_density_cm2 = result.log10_column_density_cm2 = Estimate{};
+  EXPECT_THAT(terminal_report(result),
+              AllOf(HasSubstr("T_rot   480 ± 31 K"), Not(HasSubstr("N_tot")), Not(HasSubstr("no bound"))));
 }
 
 TEST(TerminalReport, SaysThatAStatedTemperatureWasNotFitted) {
@@ -120,7 +136,7 @@ TEST(TerminalReport, ShowsEachLineWithObservedModelAndResidual) {
 TEST(TerminalReport, MarksLimitsAndThoseBelowTheModel) {
   Result result = invented_result({.limits = 2});
   result.lines[7].intensity_k_km_s = 0.0421;
-  result.lines[8].residual_sigma = -2.0;
+  result.lines[8].intensity_k_km_s = 0.9 * result.lines[8].model_intensity_k_km_s;
   const std::string text = terminal_report(result);
   EXPECT_THAT(line_with(text, "8(2)–7(2)"), AllOf(HasSubstr("< 0.0421"), HasSubstr("limit")));
   EXPECT_THAT(line_with(text, "8(3)–7(3)"), HasSubstr("limit !"));
@@ -129,7 +145,7 @@ TEST(TerminalReport, MarksLimitsAndThoseBelowTheModel) {
 
 TEST(TerminalReport, ListsWhatWasNotUsedWithItsReasonAndPlace) {
   const std::string text = terminal_report(invented_result({.unused = 2}));
-  EXPECT_THAT(text, HasSubstr("5(1)–4(1) (table line 3): left out by request"));
+  EXPECT_THAT(text, HasSubstr("left out by request: 5(0)–4(0) (table line 2), 5(1)–4(1) (table line"));
   EXPECT_THAT(terminal_report(invented_result()), Not(HasSubstr("Not used")));
 }
 
