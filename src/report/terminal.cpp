@@ -360,7 +360,7 @@ void add_unused(Page& page, const Result& result) {
   const auto reasons = unused_by_reason(result, page);
   if (reasons.empty()) return;
   page.heading("Not used");
-  for (const auto& [why, lines] : reasons) page.item("-", why + ": " + lines, kDim);
+  for (const auto& [why, lines] : reasons) page.item("-", lines + page.pick(" – ", " - ") + why, kDim);
 }
 
 void add_checks(Page& page, const Result& result) {

@@ -145,7 +145,7 @@ TEST(TerminalReport, MarksLimitsAndThoseBelowTheModel) {
 
 TEST(TerminalReport, ListsWhatWasNotUsedWithItsReasonAndPlace) {
   const std::string text = terminal_report(invented_result({.unused = 2}));
-  EXPECT_THAT(text, HasSubstr("left out by request: 5(0)–4(0) (table line 2), 5(1)–4(1) (table line"));
+  EXPECT_THAT(text, HasSubstr("5(0)–4(0) (table line 2), 5(1)–4(1) (table line 3) – left out by request"));
   EXPECT_THAT(terminal_report(invented_result()), Not(HasSubstr("Not used")));
 }
 
