@@ -8,6 +8,7 @@
 #include <sstream>
 
 #include <trotline/base/text.hpp>
+#include <trotline/observation/intensity_table.hpp>
 #include <trotline/report/display_text.hpp>
 #include <trotline/report/ecsv.hpp>
 
@@ -146,6 +147,29 @@ TEST(LinesEcsv, HoldsEveryTextAsData) {
     EXPECT_EQ(table.header["meta"]["provenance"]["options"][display_text(text)].as<std::string>(),
               display_text(text));
   }
+}
+
+TEST(LinesEcsv, IsAnIntensityTableThatCanBeReadAgain) {
+  Result result = invented_result({.limits = 2});
+  result.lines[1].calibration_error = 0.1;
+  result.lines[1].calibration_group = "band 3, \"low\"";
+  result.lines[2].beam_fwhm_arcsec = kNotKnown;
+  const IntensityTable table = parse_intensity_table(lines_ecsv(result), "lines.ecsv");
+  ASSERT_EQ(table.rows.size(), result.lines.size());
+  for (std::size_t i = 0; i < table.rows.size(); ++i) {
+    const LineResult& line = result.lines[i];
+    EXPECT_EQ(table.rows[i].transition, line.transition);
+    EXPECT_EQ(table.rows[i].intensity, line.intensity_k_km_s);
+    EXPECT_EQ(table.rows[i].intensity_sigma, line.intensity_error_k_km_s);
+    EXPECT_EQ(table.rows[i].scale, IntensityScale::main_beam);
+    EXPECT_EQ(table.rows[i].is_limit, line.limit);
+    EXPECT_NEAR(table.rows[i].frequency_hz.value_or(0.0), line.frequency_mhz * 1e6,
+                1e-6 * line.frequency_mhz);
+  }
+  EXPECT_EQ(table.rows[1].calibration_error, 0.1);
+  EXPECT_EQ(table.rows[1].calibration_group, "band 3, \"low\"");
+  EXPECT_TRUE(table.rows[0].beam_fwhm_rad.has_value());
+  EXPECT_FALSE(table.rows[2].beam_fwhm_rad.has_value());
 }
 
 TEST(LinesEcsv, StandsAResultWithoutLines) { EXPECT_TRUE(read_table(lines_ecsv(Result{})).rows.empty()); }
