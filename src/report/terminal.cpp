@@ -205,7 +205,7 @@ std::string headline(Status status) {
     case Status::done:
       return {};
     case Status::one_line:
-      return "No temperature: one line, or lines of one upper energy.";
+      return "No temperature: the lines have one upper energy.";
     case Status::not_thermal:
       return "No temperature: ln(N_u/g_u) does not fall with E_u.";
     case Status::only_limits:

@@ -39,7 +39,7 @@ TEST_F(Fit, OneLineGivesNoTemperatureButNAtATemperature) {
                                        "transition,intensity [K km/s],intensity_error [K km/s]\n1-0,4.21,0.08\n");
   const Outcome without = run({"fit", one, "--species", "CO"});
   EXPECT_EQ(without.code, ExitCode::no_answer);
-  EXPECT_THAT(without.out, HasSubstr("One line only"));
+  EXPECT_THAT(without.out, HasSubstr("one upper energy"));
   const Outcome with = run({"fit", one, "--species", "CO", "--temperature", "20 K", "--json"});
   ASSERT_EQ(with.code, ExitCode::done) << with.err;
   EXPECT_TRUE(nlohmann::json::parse(with.out).at("temperature_k").at("error").is_null());
