@@ -1,3 +1,4 @@
+#include <algorithm>
 #include <map>
 
 #include <trotline/base/errors.hpp>
@@ -128,6 +129,23 @@ TEST(AsymmetricRotor, BadInputIsRefused) {
   EXPECT_THROW((void)asymmetric_model(swapped, {}, *none, {}), DomainError);
   EXPECT_THROW((void)asymmetric_model(formaldehyde(), {.b_c_m = std::nan("")}, *none, {}), DomainError);
   EXPECT_THROW((void)asymmetric_model(formaldehyde(), {}, *none, {.highest_j = 1000}), DomainError);
+}
+
+TEST(AsymmetricRotor, LevelsAndLinesAreSorted) {
+  // With B = C whole series of lines coincide but for rounding.
+  const AsymmetricConstants symmetric{.a_hz = 30e9, .b_hz = 5e9, .c_hz = 5e9};
+  for (const AsymmetricConstants& c : {formaldehyde(), symmetric}) {
+    const RotorModel model = model_of(c, kAllThree, 20);
+    EXPECT_TRUE(
+        std::is_sorted(model.levels.begin(), model.levels.end(),
+                       [](const RotorLevel& x, const RotorLevel& y) { return x.energy_hz < y.energy_hz; }));
+    EXPECT_TRUE(std::is_sorted(
+        model.transitions.begin(), model.transitions.end(),
+        [](const RotorTransition& x, const RotorTransition& y) { return x.frequency_hz < y.frequency_hz; }));
+    for (const RotorTransition& line : model.transitions) {
+      ASSERT_EQ(line.frequency_hz, model.levels[line.upper].energy_hz - model.levels[line.lower].energy_hz);
+    }
+  }
 }
 
 TEST(AsymmetricRotor, SameInputGivesTheSameBits) {
