@@ -87,7 +87,7 @@ TEST(TerminalReport, WordsEveryStatusApart) {
 
 TEST(TerminalReport, GivesLimitsOnTheColumnWhereNothingIsDetected) {
   Result result = only_limits_result();
-  result.columns_at_temperatures = {{20.0, 3.46e13, kNotKnown}};
+  result.columns_at_temperatures = {{20.0, 3.46e13, kNotKnown, true}};
   EXPECT_THAT(terminal_report(result), HasSubstr("< 3.5 × 10¹³"));
 }
 
