@@ -28,7 +28,7 @@ std::multimap<std::string, std::string> blocks_of(const std::string& page) {
 
 TEST(SpeciesFilesManual, EveryExampleIsAccepted) {
   const auto blocks = blocks_of(read_file(std::string(TROTLINE_SOURCE_DIR) + "/docs/species-files.md"));
-  ASSERT_EQ(blocks.count("yaml"), 3u);
+  ASSERT_EQ(blocks.count("yaml"), 5u);
   ASSERT_EQ(blocks.count("text"), 1u);
   const auto folder = std::filesystem::temp_directory_path() / fmt::format("trotline-manual-{}", ::getpid());
   std::filesystem::create_directories(folder);
