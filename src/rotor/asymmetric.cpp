@@ -22,12 +22,15 @@ struct SolvedJ {
 /// Solves J = 0, 1, 2 ... and appends the levels.
 class LevelMaker {
  public:
-  LevelMaker(const AsymmetricConstants& constants, int highest_j, Eigenvectors eigenvectors)
-      : constants_(constants), eigenvectors_(eigenvectors), guard_(constants.representation, highest_j) {}
+  LevelMaker(const AsymmetricConstants& constants, int highest_j, double highest_energy_hz)
+      : constants_(constants),
+        highest_energy_hz_(highest_energy_hz),
+        guard_(constants.representation, highest_j) {}
 
-  SolvedJ solve(int j, AsymmetricLevels& levels) {
+  SolvedJ solve(int j, Eigenvectors eigenvectors, AsymmetricLevels& levels) {
     const HamiltonianAtJ hamiltonian(constants_, j);
-    SolvedJ solved{wang_blocks(hamiltonian, constants_.representation, eigenvectors_), {}};
+    SolvedJ solved{
+        wang_blocks(hamiltonian, constants_.representation, eigenvectors, highest_energy_hz_), {}};
     for (std::size_t b = 0; b < solved.blocks.size(); ++b) {
       const WangBlock& block = solved.blocks[b];
       const std::vector<bool> stays = guard_.admit(block, hamiltonian.rising_k());
@@ -54,7 +57,7 @@ class LevelMaker {
   }
 
   const AsymmetricConstants& constants_;
-  Eigenvectors eigenvectors_;
+  double highest_energy_hz_;
   LadderGuard guard_;
 };
 
@@ -146,6 +149,14 @@ std::vector<RotorLevel> as_rotor_levels(const AsymmetricLevels& levels) {
   return result;
 }
 
+double lowest_hz(const SolvedJ& solved) {
+  double lowest = std::numeric_limits<double>::infinity();
+  for (const WangBlock& block : solved.blocks) {
+    if (block.energy_hz.size() > 0) lowest = std::min(lowest, block.energy_hz[0]);
+  }
+  return lowest;
+}
+
 void require_finite(const DipoleMoment& dipole) {
   for (const double component : {dipole.a_c_m, dipole.b_c_m, dipole.c_c_m}) {
     if (!std::isfinite(component)) throw DomainError("dipole component [C m]", component, "finite");
@@ -158,8 +169,8 @@ AsymmetricLevels asymmetric_levels(const AsymmetricConstants& constants, int hig
   require_valid(constants);
   require_valid_j(highest_j);
   AsymmetricLevels levels;
-  LevelMaker maker(constants, highest_j, Eigenvectors::no);
-  for (int j = 0; j <= highest_j; ++j) (void)maker.solve(j, levels);
+  LevelMaker maker(constants, highest_j, std::numeric_limits<double>::infinity());
+  for (int j = 0; j <= highest_j; ++j) (void)maker.solve(j, Eigenvectors::no, levels);
   maker.finish(levels);
   return levels;
 }
@@ -171,13 +182,17 @@ RotorModel asymmetric_model(const AsymmetricConstants& constants, const DipoleMo
   require_finite(dipole);
   AsymmetricLevels levels;
   RotorModel model;
-  LevelMaker maker(constants, options.highest_j, Eigenvectors::yes);
+  LevelMaker maker(constants, options.highest_j, options.highest_energy_hz);
   const LineMaker line_maker(levels, mu2_by_body_axis(dipole, constants.representation), options);
-  SolvedJ previous = maker.solve(0, levels);
+  SolvedJ previous = maker.solve(0, Eigenvectors::yes, levels);
   for (int j = 1; j <= options.highest_j; ++j) {
-    SolvedJ current = maker.solve(j, levels);
-    line_maker.connect(previous, current, model.transitions);
-    line_maker.connect(current, current, model.transitions);
+    const bool has_lines = j <= options.highest_line_j;
+    SolvedJ current = maker.solve(j, has_lines ? Eigenvectors::yes : Eigenvectors::no, levels);
+    if (has_lines) {
+      line_maker.connect(previous, current, model.transitions);
+      line_maker.connect(current, current, model.transitions);
+    }
+    if (lowest_hz(current) > options.highest_energy_hz) break;  // as are all levels of larger J
     previous = std::move(current);
   }
   maker.finish(levels);

@@ -150,6 +150,17 @@ double HamiltonianAtJ::diagonal_hz(int k) const {
   return mean_hz_ * x_ + (z_hz_ - mean_hz_) * y + constants_.diagonal.at_hz(x_, frozen(y));
 }
 
+double HamiltonianAtJ::floor_hz(int k) const {
+  const double y = static_cast<double>(k) * k;
+  return diagonal_hz(k) - 0.5 * std::abs(difference_hz_) * (x_ - y);
+}
+
+double HamiltonianAtJ::spread_of_k() const {
+  const double across_hz = std::abs(difference_hz_);
+  const double along_hz = std::abs(z_hz_ - mean_hz_) + 0.5 * across_hz;
+  return std::sqrt(j_ * std::sqrt(across_hz / along_hz));
+}
+
 double HamiltonianAtJ::coupling_hz(int k, int m) const {
   if (k < -j_ || k + 2 * m > j_) return 0.0;
   const double rigid_hz = m == 1 ? 0.25 * difference_hz_ : 0.0;

@@ -55,7 +55,8 @@ bool settle_line(RotorTransition& line, const std::vector<RotorLevel>& levels,
   if (line.upper == kDropped || line.lower == kDropped) return false;
   if (levels[line.upper].energy_hz < levels[line.lower].energy_hz) std::swap(line.upper, line.lower);
   line.frequency_hz = levels[line.upper].energy_hz - levels[line.lower].energy_hz;
-  const bool wanted = line.frequency_hz > 0.0 && line.frequency_hz >= options.lowest_frequency_hz &&
+  const int j = std::max(levels[line.upper].quanta.j, levels[line.lower].quanta.j);
+  const bool wanted = j <= options.highest_line_j && line.frequency_hz > 0.0 && line.frequency_hz >= options.lowest_frequency_hz &&
                       line.frequency_hz <= options.highest_frequency_hz;
   if (!wanted) return false;
   line.einstein_a_per_s = einstein_a_per_s(line.frequency_hz, line.line_strength_mu2_c2m2,
@@ -110,6 +111,7 @@ void require_valid(const RotorOptions& options) {
   if (!(options.highest_frequency_hz > options.lowest_frequency_hz)) {
     throw DomainError("highest_frequency_hz", options.highest_frequency_hz, "above the lowest frequency");
   }
+  if (options.highest_line_j < 0) throw DomainError("highest_line_j", options.highest_line_j, "not below 0");
   if (!(options.least_line_strength >= 0.0 && std::isfinite(options.least_line_strength))) {
     throw DomainError("least_line_strength", options.least_line_strength, "finite and not below 0");
   }

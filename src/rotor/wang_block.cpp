@@ -13,7 +13,8 @@ using Solver = Eigen::SelfAdjointEigenSolver<Eigen::MatrixXd>;
 
 int first_k_of(bool odd, int sign) { return odd ? 1 : sign > 0 ? 0 : 2; }
 
-int size_of(int j, int first_k) { return first_k > j ? 0 : (j - first_k) / 2 + 1; }
+/// How many basis states a block has whose K ends at last_k.
+int size_of(int last_k, int first_k) { return first_k > last_k ? 0 : (last_k - first_k) / 2 + 1; }
 
 /// <J,to|H|J,from> for K that differ by an even number.
 double element_hz(const HamiltonianAtJ& hamiltonian, int from, int to) {
@@ -59,7 +60,7 @@ void diagonalise(const HamiltonianAtJ& hamiltonian, WangBlock& block, int n, Eig
     unit_hz = matrix.unit_hz;
     solver.computeFromTridiagonal(matrix.diagonal, matrix.below, options);
   } else {
-    solver.compute(wang_matrix_hz(hamiltonian, block.first_k, block.sign), options);
+    solver.compute(wang_matrix_hz(hamiltonian, block.first_k, block.sign).topLeftCorner(n, n), options);
   }
   if (solver.info() != Eigen::Success)
     throw Error("the energies of an asymmetric rotor could not be computed");
@@ -70,7 +71,7 @@ void diagonalise(const HamiltonianAtJ& hamiltonian, WangBlock& block, int n, Eig
 /// +1 or -1 as `exponent` is even or odd.
 int sign_of(int exponent) { return exponent % 2 == 0 ? 1 : -1; }
 
-/// Labels by rising Ka. The character of a level under a half turn is (-1)^Ka about a and (-1)^Kc about c;
+/// Labels by rising Ka, for as many levels as the block has. The character of a level under a half turn is (-1)^Ka about a and (-1)^Kc about c;
 /// that of a Wang state is (-1)^K about z, sign (-1)^J about x and sign (-1)^(J-K) about y.
 void label(WangBlock& block, Representation representation) {
   const int about_z = sign_of(block.first_k);
@@ -84,6 +85,7 @@ void label(WangBlock& block, Representation representation) {
   for (int ka = about_a > 0 ? 0 : 1; ka <= block.j; ka += 2) {
     const int kc = block.j - ka + (sign_of(block.j - ka) == about_c ? 0 : 1);
     if (kc > block.j) continue;  // Ka = 0 has Kc = J only
+    if (static_cast<Eigen::Index>(block.ka.size()) == block.energy_hz.size()) return;
     block.ka.push_back(static_cast<std::int16_t>(ka));
     block.kc.push_back(static_cast<std::int16_t>(kc));
   }
@@ -104,15 +106,25 @@ Eigen::MatrixXd wang_matrix_hz(const HamiltonianAtJ& hamiltonian, int first_k, i
   return matrix;
 }
 
+int largest_k_in_use(const HamiltonianAtJ& hamiltonian, double highest_energy_hz) {
+  // The tail of a vector beyond its classical limit: exp(-6^2) is below the rounding of an energy.
+  const int tail = 10 + static_cast<int>(6.0 * hamiltonian.spread_of_k());
+  int k = hamiltonian.j();
+  while (k > 0 && hamiltonian.floor_hz(k) > highest_energy_hz) --k;
+  return std::min(k + tail, hamiltonian.j());
+}
+
 std::array<WangBlock, 4> wang_blocks(const HamiltonianAtJ& hamiltonian, Representation representation,
-                                     Eigenvectors eigenvectors) {
+                                     Eigenvectors eigenvectors, double highest_energy_hz) {
+  const bool z_is_a = representation == Representation::i_r || representation == Representation::i_l;
+  const int last_k = z_is_a ? largest_k_in_use(hamiltonian, highest_energy_hz) : hamiltonian.j();
   std::array<WangBlock, 4> blocks;
   for (std::size_t i = 0; i < blocks.size(); ++i) {
     WangBlock& block = blocks[i];
     block.j = hamiltonian.j();
     block.sign = i % 2 == 0 ? +1 : -1;
     block.first_k = first_k_of(i >= 2, block.sign);
-    const int n = size_of(block.j, block.first_k);
+    const int n = size_of(last_k, block.first_k);
     if (n > 0) diagonalise(hamiltonian, block, n, eigenvectors);
     label(block, representation);
   }

@@ -81,6 +81,14 @@ class HamiltonianAtJ {
   /// <J,K+2m|H|J,K> [Hz] for m = 1 .. 4; 0 where K+2m is outside of -J .. J.
   [[nodiscard]] double coupling_hz(int k, int m) const;
 
+  /// The least classical energy with Jz = K [Hz], asymmetry of the distortion aside: <J,K|H|J,K> less what the
+  /// difference of the two constants across z takes off at most.
+  [[nodiscard]] double floor_hz(int k) const;
+
+  /// How far a vector spreads in K about its classical limit: that of the lowest level, which is a harmonic
+  /// oscillator in K, falls off as exp(-K^2 / (2 spread^2)) at large J.
+  [[nodiscard]] double spread_of_k() const;
+
   /// The largest m with a coupling: 1 in the A reduction, which makes Wang blocks tridiagonal.
   [[nodiscard]] int furthest_coupling() const;
 

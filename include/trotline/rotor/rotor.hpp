@@ -21,6 +21,8 @@ struct DipoleMoment {
   double c_c_m = 0.0;
 };
 
+inline constexpr int kHighestJ = 400;
+
 /// What to compute and what to keep. The same for every rotor.
 struct RotorOptions {
   int highest_j = 60;  ///< levels up to this J; 0 to kHighestJ
@@ -28,9 +30,8 @@ struct RotorOptions {
   double lowest_frequency_hz = 0.0;                                    ///< lines below, or at 0, are dropped
   double highest_frequency_hz = std::numeric_limits<double>::infinity();  ///< lines above are dropped
   double least_line_strength = 0.0;  ///< lines with S (without mu^2) below are dropped
+  int highest_line_j = kHighestJ;    ///< lines of a level with J above are dropped; levels stay, for Q
 };
-
-inline constexpr int kHighestJ = 400;
 
 struct RotorLevel {
   QuantumNumbers quanta = {};

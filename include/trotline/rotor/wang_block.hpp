@@ -4,6 +4,7 @@
 
 #include <array>
 #include <cstdint>
+#include <limits>
 #include <vector>
 
 #include <trotline/rotor/asymmetric_hamiltonian.hpp>
@@ -30,10 +31,19 @@ struct WangBlock {
 enum class Eigenvectors { no, yes };
 
 /// Diagonalises the four blocks E+, E-, O+, O- of one J. Blocks may be empty (three of them at J = 0).
+///
+/// Where z is a, only levels up to highest_energy_hz may be wanted. Classically a level of energy E has K of
+/// at most sqrt((E - C J(J+1)) / (A - C)), and its vector falls off exponentially beyond: basis states far
+/// above are left out, which moves no wanted energy by more than rounding (tested), and levels
+/// above may be missing.
 /// @throws Error if the eigenvalue iteration does not converge
-[[nodiscard]] std::array<WangBlock, 4> wang_blocks(const HamiltonianAtJ& hamiltonian,
-                                                   Representation representation,
-                                                   Eigenvectors eigenvectors = Eigenvectors::no);
+[[nodiscard]] std::array<WangBlock, 4> wang_blocks(
+    const HamiltonianAtJ& hamiltonian, Representation representation,
+    Eigenvectors eigenvectors = Eigenvectors::no,
+    double highest_energy_hz = std::numeric_limits<double>::infinity());
+
+/// The largest K of a basis state that levels up to an energy have a part in; see wang_blocks.
+[[nodiscard]] int largest_k_in_use(const HamiltonianAtJ& hamiltonian, double highest_energy_hz);
 
 /// The block's Hamiltonian as a full matrix [Hz], for checks.
 [[nodiscard]] Eigen::MatrixXd wang_matrix_hz(const HamiltonianAtJ& hamiltonian, int first_k, int sign);
