@@ -21,6 +21,11 @@ struct KindOfFile {
 
 constexpr std::array kKinds = {
     KindOfFile{SpeciesKind::linear, read_linear},
+    KindOfFile{SpeciesKind::symmetric, read_symmetric},
+    KindOfFile{SpeciesKind::asymmetric, read_asymmetric},
+    KindOfFile{SpeciesKind::triplet_sigma, read_triplet_sigma},
+    KindOfFile{SpeciesKind::inversion, read_inversion},
+    KindOfFile{SpeciesKind::structure, read_structure},
     KindOfFile{SpeciesKind::levels, read_levels},
     KindOfFile{SpeciesKind::line_list, read_line_list},
 };

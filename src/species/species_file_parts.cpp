@@ -1,6 +1,8 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
+#include <limits>
 
 #include <trotline/base/text.hpp>
 #include <trotline/physics/constants.hpp>
@@ -82,6 +84,12 @@ Validity read_validity(const FileMap& file) {
   const FileMap holds = file.map("holds");
   Validity validity;
   validity.largest_j = static_cast<int>(holds.whole("largest_j", {1, kHighestJ}));
+  validity.largest_k = static_cast<int>(holds.optional_whole("largest_k", {0, kHighestJ}, kHighestJ));
+  validity.highest_frequency_hz = holds.optional_quantity("highest_frequency", Dimension::frequency,
+                                                          std::numeric_limits<double>::infinity());
+  if (!(validity.highest_frequency_hz > 0.0)) {
+    holds.refuse("highest_frequency", {"the highest frequency is not above 0", "e.g. '1000 GHz'"});
+  }
   validity.highest_temperature_k =
       holds.optional_quantity("highest_temperature", Dimension::temperature, kUsualHighestTemperatureK);
   if (!(validity.highest_temperature_k > kLowestTemperatureK)) {
@@ -92,24 +100,35 @@ Validity read_validity(const FileMap& file) {
 }
 
 RotorOptions options_for(const Validity& validity) {
-  constexpr double kEnergyOverTemperature = 25.0;  // what lies above adds less than 1e-9 of Q
+  constexpr double kEnergyOverTemperature = 21.0;  // what lies above adds less than 1e-8 of Q
   RotorOptions options;
   options.highest_j = kHighestJ;
+  options.highest_line_j = validity.largest_j;
+  options.highest_frequency_hz = validity.highest_frequency_hz;
   options.highest_energy_hz =
       kEnergyOverTemperature * validity.highest_temperature_k / constants::kKelvinPerHz;
+  return options;
+}
+
+RotorOptions options_for(const Validity& validity, double smallest_hz) {
+  constexpr double kDistortion = 1.3;  // how far distortion may stretch J; a ladder that ends sooner says so
+  RotorOptions options = options_for(validity);
+  const double j = kDistortion * std::sqrt(options.highest_energy_hz / smallest_hz);
+  options.highest_j = std::clamp(static_cast<int>(std::min(j, 1e6)) + 2, validity.largest_j + 1, kHighestJ);
   return options;
 }
 
 void take_model(const RotorModel& model, const Validity& validity, std::vector<VibrationalMode> modes,
                 Species& species) {
   const double zero_hz = model.levels.at(0).energy_hz;
+  species.levels.reserve(model.levels.size());
   for (const RotorLevel& level : model.levels) {
     species.levels.push_back({label_of(level.quanta), (level.energy_hz - zero_hz) * constants::kKelvinPerHz,
                               level.degeneracy(), level.isomer});
   }
   for (const RotorTransition& line : model.transitions) {
-    const int j = std::max(model.levels[line.upper].quanta.j, model.levels[line.lower].quanta.j);
-    if (j > validity.largest_j || !(line.einstein_a_per_s > 0.0)) continue;
+    const int k = std::max(model.levels[line.upper].quanta.k, model.levels[line.lower].quanta.k);
+    if (k > validity.largest_k || !(line.einstein_a_per_s > 0.0)) continue;
     species.transitions.push_back({line.upper, line.lower, line.frequency_hz, 0.0, line.einstein_a_per_s});
   }
   species.warnings.insert(species.warnings.end(), model.warnings.begin(), model.warnings.end());

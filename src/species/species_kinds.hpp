@@ -16,6 +16,11 @@
 namespace trotline {
 
 void read_linear(const FileMap& file, Species& species);
+void read_symmetric(const FileMap& file, Species& species);
+void read_asymmetric(const FileMap& file, Species& species);
+void read_triplet_sigma(const FileMap& file, Species& species);
+void read_inversion(const FileMap& file, Species& species);
+void read_structure(const FileMap& file, Species& species);
 void read_levels(const FileMap& file, Species& species);
 void read_line_list(const FileMap& file, Species& species);
 
@@ -33,6 +38,8 @@ void cite(const FileMap& group, const std::string& what, Species& species);
 /// The key `holds`: how far the constants of a rotor hold.
 struct Validity {
   int largest_j = 0;                   ///< lines above are left out; levels above serve Q alone
+  int largest_k = 0;                   ///< the same for K or Ka
+  double highest_frequency_hz = 0.0;   ///< lines above are left out; infinity where nothing is said
   double highest_temperature_k = 0.0;  ///< for which Q must be complete
 };
 [[nodiscard]] Validity read_validity(const FileMap& file);
@@ -40,7 +47,14 @@ struct Validity {
 /// How far the levels of a rotor go, so that Q is complete at the highest temperature.
 [[nodiscard]] RotorOptions options_for(const Validity& validity);
 
-/// Levels above the lowest in kelvin, lines up to validity.largest_j, Q from all levels.
+/// Lines of an asymmetric rotor with S below are left out: they are too faint to be observed, and many.
+inline constexpr double kFaintestLineStrength = 1e-4;
+
+/// The same for a rotor of which no level of J lies below smallest_hz J(J+1), but for distortion: no J is asked
+/// for whose levels are all too high.
+[[nodiscard]] RotorOptions options_for(const Validity& validity, double smallest_hz);
+
+/// Levels above the lowest in kelvin, lines as far as the constants hold, Q from all levels.
 void take_model(const RotorModel& model, const Validity& validity, std::vector<VibrationalMode> modes,
                 Species& species);
 

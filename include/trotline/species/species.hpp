@@ -11,7 +11,16 @@
 
 namespace trotline {
 
-enum class SpeciesKind { linear, symmetric, asymmetric, levels, line_list, structure };
+enum class SpeciesKind {
+  linear,
+  symmetric,
+  asymmetric,
+  triplet_sigma,
+  inversion,
+  structure,
+  levels,
+  line_list
+};
 
 [[nodiscard]] std::string_view name_of(SpeciesKind kind);
 
