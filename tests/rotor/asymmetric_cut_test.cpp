@@ -79,5 +79,41 @@ TEST(AsymmetricRotor, ACutBySeriesLeavesTheLowLevelsOfIsocyanicAcidComplete) {
   EXPECT_NEAR(levels.complete_to_hz, 10.99e9 * 20 * 21, 0.05e9 * 20 * 21);
 }
 
+/// Basis states far beyond the classical limit of K are left out where only levels up to an energy are wanted.
+TEST(AsymmetricRotor, LevelsUpToAnEnergyAreThoseOfTheWholeBasis) {
+  for (const AsymmetricConstants& c : {formaldehyde(), sulphur_dioxide(), water()}) {
+    RotorOptions options;
+    options.highest_j = 60;
+    options.highest_energy_hz = 1.2 * c.c_hz * 60 * 61;
+    options.highest_line_j = 5;
+    const RotorModel model = asymmetric_model(c, {1e-30, 0.0, 0.0}, *make_spin_rule({}), options);
+    const AsymmetricLevels whole = asymmetric_levels(c, 60);
+    std::map<std::string, double> energies;
+    for (std::size_t i = 0; i < whole.size(); ++i) {
+      if (whole.energy_hz[i] > options.highest_energy_hz) continue;
+      energies[label_of({.j = whole.j[i], .k = whole.ka[i], .kc = whole.kc[i]})] = whole.energy_hz[i];
+    }
+    ASSERT_EQ(model.levels.size(), energies.size());
+    for (const RotorLevel& level : model.levels) {
+      // Rounding: a few eps times the largest energy on the diagonal.
+      EXPECT_NEAR(level.energy_hz, energies.at(label_of(level.quanta)), 1e-12 * c.a_hz * 60 * 61);
+    }
+  }
+}
+
+TEST(AsymmetricRotor, LinesAboveAJAreLeftOutAndTheOthersStayTheSame) {
+  RotorOptions options;
+  options.highest_j = 12;
+  const RotorModel whole = asymmetric_model(sulphur_dioxide(), {0.0, 1e-30, 0.0}, *make_spin_rule({}), options);
+  options.highest_line_j = 7;
+  const RotorModel cut = asymmetric_model(sulphur_dioxide(), {0.0, 1e-30, 0.0}, *make_spin_rule({}), options);
+  EXPECT_EQ(cut.levels.size(), whole.levels.size());
+  std::size_t expected = 0;
+  for (const RotorTransition& line : whole.transitions) {
+    expected += std::max(whole.levels[line.upper].quanta.j, whole.levels[line.lower].quanta.j) <= 7;
+  }
+  EXPECT_EQ(cut.transitions.size(), expected);
+}
+
 }  // namespace
 }  // namespace trotline
