@@ -29,8 +29,7 @@ class LevelMaker {
 
   SolvedJ solve(int j, Eigenvectors eigenvectors, AsymmetricLevels& levels) {
     const HamiltonianAtJ hamiltonian(constants_, j);
-    SolvedJ solved{
-        wang_blocks(hamiltonian, constants_.representation, eigenvectors, highest_energy_hz_), {}};
+    SolvedJ solved{wang_blocks(hamiltonian, constants_.representation, eigenvectors, highest_energy_hz_), {}};
     for (std::size_t b = 0; b < solved.blocks.size(); ++b) {
       const WangBlock& block = solved.blocks[b];
       const std::vector<bool> stays = guard_.admit(block, hamiltonian.rising_k());

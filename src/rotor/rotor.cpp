@@ -1,8 +1,8 @@
+#include <boost/sort/spreadsort/integer_sort.hpp>
 #include <fmt/format.h>
 
 #include <algorithm>
 #include <bit>
-#include <boost/sort/spreadsort/integer_sort.hpp>
 #include <cmath>
 
 #include <trotline/base/errors.hpp>
@@ -56,7 +56,8 @@ bool settle_line(RotorTransition& line, const std::vector<RotorLevel>& levels,
   if (levels[line.upper].energy_hz < levels[line.lower].energy_hz) std::swap(line.upper, line.lower);
   line.frequency_hz = levels[line.upper].energy_hz - levels[line.lower].energy_hz;
   const int j = std::max(levels[line.upper].quanta.j, levels[line.lower].quanta.j);
-  const bool wanted = j <= options.highest_line_j && line.frequency_hz > 0.0 && line.frequency_hz >= options.lowest_frequency_hz &&
+  const bool wanted = j <= options.highest_line_j && line.frequency_hz > 0.0 &&
+                      line.frequency_hz >= options.lowest_frequency_hz &&
                       line.frequency_hz <= options.highest_frequency_hz;
   if (!wanted) return false;
   line.einstein_a_per_s = einstein_a_per_s(line.frequency_hz, line.line_strength_mu2_c2m2,

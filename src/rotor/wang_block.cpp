@@ -71,8 +71,9 @@ void diagonalise(const HamiltonianAtJ& hamiltonian, WangBlock& block, int n, Eig
 /// +1 or -1 as `exponent` is even or odd.
 int sign_of(int exponent) { return exponent % 2 == 0 ? 1 : -1; }
 
-/// Labels by rising Ka, for as many levels as the block has. The character of a level under a half turn is (-1)^Ka about a and (-1)^Kc about c;
-/// that of a Wang state is (-1)^K about z, sign (-1)^J about x and sign (-1)^(J-K) about y.
+/// Labels by rising Ka, for as many levels as the block has. The character of a level under a half turn is
+/// (-1)^Ka about a and (-1)^Kc about c; that of a Wang state is (-1)^K about z, sign (-1)^J about x and sign
+/// (-1)^(J-K) about y.
 void label(WangBlock& block, Representation representation) {
   const int about_z = sign_of(block.first_k);
   const int about_x = block.sign * sign_of(block.j);

@@ -17,7 +17,7 @@ namespace trotline {
 template <typename Constants>
 struct ConstantKey {
   const char* key;
-  double Constants::* member;
+  double Constants::*member;
 };
 
 /// Reads those constants that the file has; the others stay as they are.
@@ -46,7 +46,8 @@ auto made_from(const FileMap& file, const std::string& key, const Make& make) {
   try {
     return make();
   } catch (const DomainError& error) {
-    file.refuse(key, {error.what(), "constants that make a rotor", "check signs, units and the order A >= B >= C"});
+    file.refuse(
+        key, {error.what(), "constants that make a rotor", "check signs, units and the order A >= B >= C"});
   }
 }
 

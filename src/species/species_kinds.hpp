@@ -50,8 +50,8 @@ struct Validity {
 /// Lines of an asymmetric rotor with S below are left out: they are too faint to be observed, and many.
 inline constexpr double kFaintestLineStrength = 1e-4;
 
-/// The same for a rotor of which no level of J lies below smallest_hz J(J+1), but for distortion: no J is asked
-/// for whose levels are all too high.
+/// The same for a rotor of which no level of J lies below smallest_hz J(J+1), but for distortion: no J is
+/// asked for whose levels are all too high.
 [[nodiscard]] RotorOptions options_for(const Validity& validity, double smallest_hz);
 
 /// Levels above the lowest in kelvin, lines as far as the constants hold, Q from all levels.

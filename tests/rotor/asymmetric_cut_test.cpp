@@ -79,7 +79,8 @@ TEST(AsymmetricRotor, ACutBySeriesLeavesTheLowLevelsOfIsocyanicAcidComplete) {
   EXPECT_NEAR(levels.complete_to_hz, 10.99e9 * 20 * 21, 0.05e9 * 20 * 21);
 }
 
-/// Basis states far beyond the classical limit of K are left out where only levels up to an energy are wanted.
+/// Basis states far beyond the classical limit of K are left out where only levels up to an energy are
+/// wanted.
 TEST(AsymmetricRotor, LevelsUpToAnEnergyAreThoseOfTheWholeBasis) {
   for (const AsymmetricConstants& c : {formaldehyde(), sulphur_dioxide(), water()}) {
     RotorOptions options;
@@ -104,7 +105,8 @@ TEST(AsymmetricRotor, LevelsUpToAnEnergyAreThoseOfTheWholeBasis) {
 TEST(AsymmetricRotor, LinesAboveAJAreLeftOutAndTheOthersStayTheSame) {
   RotorOptions options;
   options.highest_j = 12;
-  const RotorModel whole = asymmetric_model(sulphur_dioxide(), {0.0, 1e-30, 0.0}, *make_spin_rule({}), options);
+  const RotorModel whole =
+      asymmetric_model(sulphur_dioxide(), {0.0, 1e-30, 0.0}, *make_spin_rule({}), options);
   options.highest_line_j = 7;
   const RotorModel cut = asymmetric_model(sulphur_dioxide(), {0.0, 1e-30, 0.0}, *make_spin_rule({}), options);
   EXPECT_EQ(cut.levels.size(), whole.levels.size());

@@ -17,7 +17,7 @@ struct DirectoryRow {
   std::string directory;
   int tag = 0;
   std::string entry;
-  double factor = 1.0;  ///< what the directory counts more than the species file
+  double factor = 1.0;      ///< what the directory counts more than the species file
   std::string counts = {};  ///< in words
   bool all_states = false;
   std::map<double, double> ratios = {};        ///< T [K]: directory / (factor times ours)
@@ -75,7 +75,8 @@ inline DirectoryRow row_of(const YAML::Node& entry, const YAML::Node& convention
 inline std::vector<DirectoryRow> directory_rows() {
   const YAML::Node conventions = reference_yaml("partition_conventions.yaml");
   std::vector<DirectoryRow> rows;
-  for (const auto& entry : reference_yaml("partition_directories.yaml")) rows.push_back(row_of(entry, conventions));
+  for (const auto& entry : reference_yaml("partition_directories.yaml"))
+    rows.push_back(row_of(entry, conventions));
   return rows;
 }
 

@@ -2,6 +2,9 @@
 //
 // To write the table anew: TROTLINE_WRITE_TABLES=1 species_test --gtest_filter='Directories.*'
 
+#include "species/directories.hpp"
+
+#include <fmt/format.h>
 #include <gtest/gtest.h>
 
 #include <algorithm>
@@ -11,12 +14,8 @@
 #include <filesystem>
 #include <set>
 
-#include <fmt/format.h>
-
 #include <trotline/base/files.hpp>
 #include <trotline/species/library.hpp>
-
-#include "species/directories.hpp"
 
 namespace trotline {
 namespace {
@@ -123,7 +122,8 @@ std::string table() {
                    [](const DirectoryRow& a, const DirectoryRow& b) { return a.species < b.species; });
   std::vector<std::string> reasons;
   for (const DirectoryRow& row : sorted) {
-    text += fmt::format("| {} | {} {} | {} | {} |", row.species, row.directory, row.tag, row.all_states ? "all" : "v = 0",
+    text += fmt::format("| {} | {} {} | {} | {} |", row.species, row.directory, row.tag,
+                        row.all_states ? "all" : "v = 0",
                         row.counts.empty() ? fmt::format("{:g}", row.factor)
                                            : fmt::format("{:g}: {}", row.factor, row.counts));
     for (const double t : kColumns) text += " " + cell(row, t, reasons) + " |";
@@ -138,7 +138,8 @@ TEST(Directories, TheTableIsUpToDate) {
   const std::string path = std::string(TROTLINE_SOURCE_DIR) + "/docs/partition-functions.md";
   const std::string now = table();
   if (std::getenv("TROTLINE_WRITE_TABLES") != nullptr) write_file(path, now);
-  EXPECT_EQ(read_file(path), now) << "write it anew: TROTLINE_WRITE_TABLES=1 species_test --gtest_filter='Directories.*'";
+  EXPECT_EQ(read_file(path), now)
+      << "write it anew: TROTLINE_WRITE_TABLES=1 species_test --gtest_filter='Directories.*'";
 }
 
 }  // namespace

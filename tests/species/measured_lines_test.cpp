@@ -1,13 +1,12 @@
 // Frequencies of the library against measured lines, and A coefficients against published values.
 
+#include <fmt/format.h>
 #include <gtest/gtest.h>
 
 #include <algorithm>
 #include <array>
 #include <cmath>
 #include <map>
-
-#include <fmt/format.h>
 
 #include <trotline/base/files.hpp>
 #include <trotline/physics/constants.hpp>
@@ -54,7 +53,8 @@ TEST(MeasuredLines, AreMet) {
   for (const auto& [name, lines] : measured_lines()) {
     const Species species = read_species_file(test::library_file(name));
     for (const MeasuredLine& line : lines) {
-      EXPECT_NEAR(line_of(species, line.label).frequency_hz * 1e-6, line.frequency_mhz, tolerance_mhz(species))
+      EXPECT_NEAR(line_of(species, line.label).frequency_hz * 1e-6, line.frequency_mhz,
+                  tolerance_mhz(species))
           << name << ' ' << line.label;
     }
   }
@@ -64,7 +64,8 @@ TEST(MeasuredLines, AreEightOrMoreOfTenSpeciesOrMore) {
   int species = 0;
   int species_independent = 0;
   for (const auto& [name, lines] : measured_lines()) {
-    const auto independent = std::count_if(lines.begin(), lines.end(), [](const auto& l) { return l.independent; });
+    const auto independent =
+        std::count_if(lines.begin(), lines.end(), [](const auto& l) { return l.independent; });
     species += lines.size() >= 8;
     species_independent += independent >= 8;
   }
@@ -80,7 +81,8 @@ TEST(EinsteinA, AgreesWithPublishedListsWithin1Percent) {
     const Species species = read_species_file(test::library_file(group["species"].as<std::string>()));
     for (const auto& line : group["lines"]) {
       const double ours = line_of(species, line.first.as<std::string>()).einstein_a_per_s;
-      EXPECT_NEAR(ours / line.second.as<double>(), 1.0, 0.01) << species.name << ' ' << line.first.as<std::string>();
+      EXPECT_NEAR(ours / line.second.as<double>(), 1.0, 0.01)
+          << species.name << ' ' << line.first.as<std::string>();
       ++compared;
     }
   }
@@ -114,15 +116,18 @@ TEST_P(ListedEinsteinA, FollowsFromIntensitiesWithin1PercentAndFaintLinesWithin3
   int compared = 0;
   for (const LineListRow& row : parse_line_list(read_file(path.string()), path.string()).rows) {
     if (row.upper[0] > published.highest_j || row.log10_intensity < -8.0) continue;
-    const auto found = transitions_labelled(species, published.label(row.upper) + "-" + published.label(row.lower));
+    const auto found =
+        transitions_labelled(species, published.label(row.upper) + "-" + published.label(row.lower));
     if (found.size() != 1) continue;  // beyond what the species file holds for
-    const double listed = einstein_a_from_intensity_per_s(
-        {std::pow(10.0, row.log10_intensity), row.frequency_mhz * 1e6,
-         row.lower_energy_per_cm * constants::kKelvinPerWavenumberCm, static_cast<double>(row.upper_degeneracy),
-         published.q_300k, 300.0});
-    // Lines that change Ka or Kc by 3 live on the asymmetry alone, and feel which distortion constants were used.
-    const bool faint = species.kind == SpeciesKind::asymmetric &&
-                       (std::abs(row.upper[1] - row.lower[1]) > 1 || std::abs(row.upper[2] - row.lower[2]) > 1);
+    const double listed =
+        einstein_a_from_intensity_per_s({std::pow(10.0, row.log10_intensity), row.frequency_mhz * 1e6,
+                                         row.lower_energy_per_cm * constants::kKelvinPerWavenumberCm,
+                                         static_cast<double>(row.upper_degeneracy), published.q_300k, 300.0});
+    // Lines that change Ka or Kc by 3 live on the asymmetry alone, and feel which distortion constants were
+    // used.
+    const bool faint =
+        species.kind == SpeciesKind::asymmetric &&
+        (std::abs(row.upper[1] - row.lower[1]) > 1 || std::abs(row.upper[2] - row.lower[2]) > 1);
     EXPECT_NEAR(species.transitions[found[0]].einstein_a_per_s / listed, 1.0, faint ? 0.03 : 0.01)
         << published.label(row.upper) << '-' << published.label(row.lower);
     ++compared;

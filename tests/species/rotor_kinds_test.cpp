@@ -71,12 +71,14 @@ TEST(AsymmetricKind, HasAllLevelsThatQNeeds) {
 
 TEST(AsymmetricKind, ReadsBothReductions) {
   const Species a = parse_species(kAsymmetric, "x.yaml");
-  const Species s = parse_species(
-      with(with(with(kAsymmetric, "reduction: A", "reduction: S"), "Delta_J", "D_J"), "delta_J: 1 kHz", "d_1: -1 kHz"),
-      "x.yaml");
+  const Species s =
+      parse_species(with(with(with(kAsymmetric, "reduction: A", "reduction: S"), "Delta_J", "D_J"),
+                         "delta_J: 1 kHz", "d_1: -1 kHz"),
+                    "x.yaml");
   // d_1 of one reduction is -delta_J of the other, and without d_2 and delta_K no other term differs.
   ASSERT_EQ(a.levels.size(), s.levels.size());
-  for (std::size_t i = 0; i < a.levels.size(); ++i) EXPECT_NEAR(a.levels[i].energy_k, s.levels[i].energy_k, 1e-8);
+  for (std::size_t i = 0; i < a.levels.size(); ++i)
+    EXPECT_NEAR(a.levels[i].energy_k, s.levels[i].energy_k, 1e-8);
 }
 
 TEST(SymmetricKind, GivesWeightsAndIsomersByK) {
@@ -99,9 +101,10 @@ TEST(StructureKind, GivesTheBOfADiatomicMolecule) {
 }
 
 TEST(StructureKind, ScalesAParentByTheRatioRuleAndSaysSo) {
-  const Species species = parse_species(
-      with(with(kStructure, "12C", "13C"), "dipole:", "parent: {isotopes: [12C, 16O], B: 57635.968 MHz, from: CO}\ndipole:"),
-      "x.yaml");
+  const Species species =
+      parse_species(with(with(kStructure, "12C", "13C"),
+                         "dipole:", "parent: {isotopes: [12C, 16O], B: 57635.968 MHz, from: CO}\ndipole:"),
+                    "x.yaml");
   // B0(13CO) = 55101.01 MHz, Cazzoli, Puzzarini & Lapinov 2004, from memory.
   EXPECT_NEAR(species.transitions.front().frequency_hz * 1e-6, 2 * 55101.01, 2 * 55101.01 * 3e-4);
   EXPECT_NE(species.warnings.at(1).find("expected error"), std::string::npos);
@@ -142,7 +145,8 @@ INSTANTIATE_TEST_SUITE_P(
         Broken{"BothAAndC", with(kSymmetric, "B: 9 GHz", "B: 9 GHz, C: 8 GHz"), "both A and C"},
         Broken{"OblateCalledA", with(kSymmetric, "A: 150 GHz", "A: 5 GHz"), "A above B"},
         Broken{"NoMu", with(kSymmetric, "mu: 3.9 D", "mu_a: 3.9 D"), "'mu' is missing in 'dipole'"},
-        Broken{"OneAtom", with(kStructure, "    - {isotope: 16O, z: 1.12832 Angstrom}\n", ""), "at least two"},
+        Broken{"OneAtom", with(kStructure, "    - {isotope: 16O, z: 1.12832 Angstrom}\n", ""),
+               "at least two"},
         Broken{"UnknownIsotope", with(kStructure, "16O", "26O"), "26O"},
         Broken{"AtomsOnTopOfEachOther", with(kStructure, "1.12832", "0.01"), "apart"},
         Broken{"StructureInMetres", with(kStructure, "1.12832 Angstrom", "1.12832 m"), "from"}),

@@ -81,8 +81,8 @@ class HamiltonianAtJ {
   /// <J,K+2m|H|J,K> [Hz] for m = 1 .. 4; 0 where K+2m is outside of -J .. J.
   [[nodiscard]] double coupling_hz(int k, int m) const;
 
-  /// The least classical energy with Jz = K [Hz], asymmetry of the distortion aside: <J,K|H|J,K> less what the
-  /// difference of the two constants across z takes off at most.
+  /// The least classical energy with Jz = K [Hz], asymmetry of the distortion aside: <J,K|H|J,K> less what
+  /// the difference of the two constants across z takes off at most.
   [[nodiscard]] double floor_hz(int k) const;
 
   /// How far a vector spreads in K about its classical limit: that of the lowest level, which is a harmonic
