@@ -8,61 +8,11 @@
 namespace trotline {
 namespace {
 
-// The colours differ in lightness as well as in hue: ink (dark), line (middle), grey (light middle), band and
-// sand (pale). They keep apart in greyscale and for eyes that take red for green.
-constexpr const char* kColours = R"(ink = 0x16212B
-line = 0x1B7F8F
-band = 0xCDE5E7
-sand = 0xF3EDDF
-guide = 0xBCAF93
-hair = 0xEDEAE3
-grey = 0x8A9299
-soft = 0x46525C
-)";
-
-constexpr double kPngDotsPerInch = 300.0;
-constexpr double kSvgPixelsPerInch = 96.0;
-constexpr double kMmPerInch = 25.4;
-
 std::string number(double value) { return fmt::format("{:.9g}", value); }
 
-/// Sizes are set so that one unit of type is a point and one unit of line width is a point in each.
-std::string terminals(const FigureSize& size) {
-  const double width_in = size.width_mm / kMmPerInch;
-  const double height_in = size.height_mm / kMmPerInch;
-  const auto pixels = [](double inches, double density) { return std::lround(inches * density); };
-  std::string text;
-  text += fmt::format(
-      "  if (format eq \"svg\") {{\n"
-      "    set terminal svg size {},{} fixed enhanced font face.\",8\" fontscale {:.5f} linewidth {:.5f} "
-      "dashlength 2 "
-      "background \"white\"\n  }}\n",
-      pixels(width_in, kSvgPixelsPerInch), pixels(height_in, kSvgPixelsPerInch), kSvgPixelsPerInch / 72.0,
-      kSvgPixelsPerInch / 72.0);
-  text += fmt::format(
-      "  if (format eq \"pdf\") {{\n"
-      "    set terminal pdfcairo size {:.6f}in,{:.6f}in enhanced font face.\",8\" fontscale 0.75 linewidth "
-      "2\n  }}\n",
-      width_in, height_in);
-  text += fmt::format(
-      "  if (format eq \"png\") {{\n"
-      "    set terminal pngcairo size {},{} enhanced font face.\",8\" fontscale {:.5f} linewidth {:.5f} "
-      "pointscale {:.5f} background \"white\"\n  }}\n",
-      pixels(width_in, kPngDotsPerInch), pixels(height_in, kPngDotsPerInch), kPngDotsPerInch / 96.0,
-      kPngDotsPerInch / 72.0, kPngDotsPerInch / 72.0);
-  return text;
-}
-
-std::string head(const std::vector<FigureFormat>& formats) {
-  std::string names;
-  for (const FigureFormat format : formats)
-    names += (names.empty() ? "" : " ") + std::string(name_of(format));
-  return fmt::format(
-      "# Rotation diagram. To draw it again: gnuplot diagram.gp\n"
-      "# Numbers and fixed words only; what is text stands in diagram-text.tsv and diagram-labels.tsv.\n"
-      "formats = \"{}\"\nface = \"{}\"\n{}",
-      names, kFigureFont, kColours);
-}
+constexpr const char* kHead =
+    "# Rotation diagram. To draw it again: gnuplot diagram.gp\n"
+    "# Numbers and fixed words only; what is text stands in diagram-text.tsv and diagram-labels.tsv.\n";
 
 /// Margins that put a panel on the page.
 std::string panel(const Box& box, const FigureSize& size) {
@@ -193,22 +143,11 @@ std::string rule(const FigureSize& size) {
 
 }  // namespace
 
-const char* name_of(FigureFormat format) {
-  switch (format) {
-    case FigureFormat::svg:
-      return "svg";
-    case FigureFormat::pdf:
-      return "pdf";
-    case FigureFormat::png:
-      return "png";
-  }
-  return "unknown";
-}
-
 std::string diagram_script(const DiagramLayout& layout, const std::vector<FigureFormat>& formats) {
   const FigureSize& size = layout.size;
   constexpr double kNameAbove = 3.1;
-  std::string script = head(formats) + kOpening + terminals(size) + kOpenPage;
+  std::string script =
+      std::string(kHead) + figure_palette(formats) + kOpening + figure_terminals(size) + kOpenPage;
   script += panel(layout.diagram_mm, size) + range("x", layout.energy) + range("y", layout.ln_nu_gu);
   script += "  unset xtics\n" + ticks("x", layout.energy, false) + "  set xtics scale 0\n";
   script += ticks("y", layout.ln_nu_gu, true);

@@ -4,19 +4,9 @@
 #include <vector>
 
 #include <trotline/report/diagram_layout.hpp>
+#include <trotline/report/figure.hpp>
 
 namespace trotline {
-
-enum class FigureFormat { svg, pdf, png };
-
-/// "svg", "pdf", "png".
-[[nodiscard]] const char* name_of(FigureFormat format);
-
-/// A file by its plain name.
-struct NamedBytes {
-  std::string name;
-  std::string bytes;
-};
 
 /// The data of a figure as tab-separated files, columns named in a comment at their head: diagram-points.tsv,
 /// diagram-line.tsv, diagram-labels.tsv, diagram-text.tsv. Numbers with nine digits; texts in double quotes

@@ -5,16 +5,11 @@
 #include <vector>
 
 #include <trotline/analysis/result.hpp>
+#include <trotline/report/figure.hpp>
 #include <trotline/report/axis.hpp>
 #include <trotline/report/label_placement.hpp>
 
 namespace trotline {
-
-/// Size of the figure [mm]. The default is one column of a journal.
-struct FigureSize {
-  double width_mm = 88.0;
-  double height_mm = 92.0;
-};
 
 enum class PointKind {
   fitted,   ///< filled
