@@ -9,6 +9,7 @@
 #include <trotline/species/line_list.hpp>
 #include <trotline/species/line_list_intensity.hpp>
 
+#include "kept_list.hpp"
 #include "line_list_levels.hpp"
 #include "species_kinds.hpp"
 
@@ -94,22 +95,25 @@ double einstein_a(const LineListRow& row, double q_300k) {
   return einstein_a_from_intensity_per_s(listed);
 }
 
-}  // namespace
+/// What the species file says besides the list.
+struct Statements {
+  std::vector<VibrationalMode> modes;
+  StatedPartition partition;
+  bool a_from_intensity = false;
+};
 
-void read_line_list(const FileMap& file, Species& species) {
-  const ListBlock block = read_block(file, species);
-  const auto modes = read_vibration(file, species);
-  StatedPartition stated = read_partition(file, species);
-  const LineList list = parse_line_list(read_file(block.path), block.path);
-  ListedLevels rebuilt = rebuild_levels(list, block.reading, block.path);
-  species.levels = std::move(rebuilt.levels);
-  species.warnings = list.warnings;
-  species.warnings.insert(species.warnings.end(), rebuilt.warnings.begin(), rebuilt.warnings.end());
+/// Q from the levels or as stated, and the Q(300 K) with which intensities become A; 0 where A is listed.
+double settle_and_get_q_300(const FileMap& file, const Statements& said, Species& species) {
+  StatedPartition stated = said.partition;
   LevelSumOptions options;
-  options.modes = modes;
+  options.modes = said.modes;
   settle_partition(stated, options, species);
-  const bool from_intensity = block.intensity == LineListIntensity::integrated_300k;
-  const double q_300k = from_intensity ? list_partition(file, stated, species) : 0.0;
+  return said.a_from_intensity ? list_partition(file, stated, species) : 0.0;
+}
+
+/// A of every line, from whatever stands in the column of intensities.
+void take_einstein_a(double q_300k, const LineList& list, const ListedLevels& rebuilt, Species& species) {
+  const bool from_intensity = q_300k > 0.0;
   species.transitions.reserve(rebuilt.transitions.size());
   for (const ListedTransition& listed : rebuilt.transitions) {
     const LineListRow& row = list.rows[listed.row];
@@ -117,6 +121,40 @@ void read_line_list(const FileMap& file, Species& species) {
     species.transitions.back().einstein_a_per_s =
         from_intensity ? einstein_a(row, q_300k) : std::pow(10.0, row.log10_intensity);
   }
+}
+
+/// Whether the list was kept, and Q(300 K) is still what it was then.
+bool take_kept(const FileMap& file, const Statements& said, const KeptList& kept, Species& species) {
+  auto opened = kept.reopen();
+  if (!opened) return false;
+  Species reopened = species;
+  reopened.levels = std::move(opened->levels);
+  reopened.transitions = std::move(opened->transitions);
+  reopened.warnings = std::move(opened->warnings);
+  if (settle_and_get_q_300(file, said, reopened) != opened->partition_300k) return false;
+  species = std::move(reopened);
+  return true;
+}
+
+}  // namespace
+
+void read_line_list(const FileMap& file, Species& species) {
+  const ListBlock block = read_block(file, species);
+  Statements said;
+  said.modes = read_vibration(file, species);
+  said.partition = read_partition(file, species);
+  said.a_from_intensity = block.intensity == LineListIntensity::integrated_300k;
+  const KeptList kept(block.path, file.file(), species.file_fingerprint);
+  if (take_kept(file, said, kept, species)) return;
+  const LineList list = parse_line_list(read_file(block.path), block.path);
+  ListedLevels rebuilt = rebuild_levels(list, block.reading, block.path);
+  species.levels = std::move(rebuilt.levels);
+  species.warnings = list.warnings;
+  species.warnings.insert(species.warnings.end(), rebuilt.warnings.begin(), rebuilt.warnings.end());
+  const std::vector<std::string> warnings_of_list = species.warnings;
+  const double q_300k = settle_and_get_q_300(file, said, species);
+  take_einstein_a(q_300k, list, rebuilt, species);
+  kept.keep({species.levels, species.transitions, warnings_of_list, q_300k});
 }
 
 }  // namespace trotline
