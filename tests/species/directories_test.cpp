@@ -29,6 +29,12 @@ const std::vector<DirectoryRow>& rows() {
 }
 
 constexpr double kAgreement = 0.005;
+
+/// Within what a cell needs no reason: 0.3 % for six plain linear molecules up to 300 K, 0.5 % for the rest.
+double agreement(const DirectoryRow& row, double temperature_k) {
+  static const std::set<std::string> plain = {"CO", "CS", "SiO", "HC3N", "OCS", "HCO+"};
+  return plain.contains(row.species) && temperature_k <= 300.0 ? 0.003 : kAgreement;
+}
 constexpr std::array kColumns = {9.375, 18.75, 37.5, 75.0, 150.0, 225.0, 300.0, 500.0};
 
 TEST(Directories, EveryDifferenceAboveHalfAPercentHasAReason) {
@@ -36,12 +42,26 @@ TEST(Directories, EveryDifferenceAboveHalfAPercentHasAReason) {
   for (const DirectoryRow& row : rows()) {
     for (const auto& [t, ratio] : row.ratios) {
       ++compared;
-      if (std::abs(ratio - 1.0) <= kAgreement) continue;
+      if (std::abs(ratio - 1.0) <= agreement(row, t)) continue;
       EXPECT_FALSE(row.reasons.at(t).empty())
           << row.species << ", " << row.directory << ' ' << row.tag << " at " << t << " K: " << ratio;
     }
   }
   EXPECT_GT(compared, 800u);
+}
+
+/// The six plain linear molecules, spins and vibrational states as the table says: with one exception, JPL's SiO
+/// at 225 and 300 K, they agree within what four digits of log10 Q and the excited states of HCO+ allow.
+TEST(Directories, PlainLinearMoleculesAgreeWithin2PerMilleUpTo300K) {
+  int compared = 0;
+  for (const DirectoryRow& row : rows()) {
+    for (const auto& [t, ratio] : row.ratios) {
+      if (agreement(row, t) == kAgreement || (row.tag == 44002 && t >= 225.0)) continue;
+      EXPECT_NEAR(ratio, 1.0, 0.002) << row.species << ' ' << row.tag << " at " << t << " K";
+      ++compared;
+    }
+  }
+  EXPECT_GE(compared, 80);
 }
 
 /// Every reason must be needed somewhere: one that explains nothing is a mistake of ours.
@@ -51,7 +71,7 @@ TEST(Directories, NoReasonIsGivenWhereNothingDiffers) {
     std::set<std::string> needed;
     for (const auto& [t, reason] : row.reasons) {
       if (reason.empty()) continue;
-      (std::abs(row.ratios.at(t) - 1.0) > kAgreement ? needed : idle).insert(reason);
+      (std::abs(row.ratios.at(t) - 1.0) > agreement(row, t) ? needed : idle).insert(reason);
     }
     for (const std::string& reason : idle) {
       EXPECT_TRUE(needed.contains(reason)) << row.species << ' ' << row.tag << ": " << reason;
@@ -95,7 +115,7 @@ A cell is **Q(directory) / (factor × Q(ours))** at the temperature above it [K]
 spins that the entry counts and the species file does not, or the other way round. *States* says with what an entry
 is compared: `v = 0`, our sum over the levels of the ground vibrational state; `all`, our Q with the vibrational factors of
 the species file, because the entry contains vibrational states, whatever its name says. `trotline` itself always uses
-the latter. A cell that differs from 1 by more than 0.5 % has the number of its reason, given below. Directories print four
+the latter. A cell that differs from 1 by more than 0.5 % (CO, CS, SiO, HC3N, OCS and HCO+ up to 300 K: 0.3 %) has the number of its reason, given below. Directories print four
 digits of log10 Q, which is 0.012 %.
 
 )";
@@ -104,7 +124,7 @@ std::string cell(const DirectoryRow& row, double t, std::vector<std::string>& re
   const auto found = row.ratios.find(t);
   if (found == row.ratios.end()) return "–";
   std::string text = fmt::format("{:.4f}", found->second);
-  if (std::abs(found->second - 1.0) <= kAgreement) return text;
+  if (std::abs(found->second - 1.0) <= agreement(row, t)) return text;
   const std::string& reason = row.reasons.at(t);
   auto place = std::find(reasons.begin(), reasons.end(), reason);
   if (place == reasons.end()) place = reasons.insert(reasons.end(), reason);
