@@ -63,9 +63,9 @@ std::uint64_t checksum(std::span<const char> bytes) {
     first[0] += word;
     second[0] += first[0];
   }
+  constexpr std::uint64_t kOdd = 0x9E3779B97F4A7C15ULL;  // any large odd number: no sum hides behind another
   std::uint64_t sum = 0;
-  for (std::size_t lane = 0; lane < kLanes; ++lane)
-    sum = sum * 0x9E3779B97F4A7C15ULL + (first[lane] ^ second[lane]);
+  for (std::size_t lane = 0; lane < kLanes; ++lane) sum = (sum * kOdd + first[lane]) * kOdd + second[lane];
   return sum;
 }
 

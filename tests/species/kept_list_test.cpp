@@ -34,8 +34,8 @@ class KeptList : public testing::Test {
       const int k = std::min(i % 90, j - 1);
       if (k != i % 90) continue;
       fmt::format_to(std::back_inserter(text),
-                     "{:13.4f}{:8.4f}{:8.4f} 3{:10.4f}{}  99001 202{}{:2}        {}{:2}        \n", 2000.0 * j,
-                     0.001, -5.0 - 0.001 * k, (1.0 * j * (j - 1) + 59.0 * k * k) * kPerGhz,
+                     "{:13.4f}{:8.4f}{:8.4f} 3{:10.4f}{}  99001 202{}{:2}        {}{:2}        \n",
+                     2000.0 * j, 0.001, -5.0 - 0.001 * k, (1.0 * j * (j - 1) + 59.0 * k * k) * kPerGhz,
                      degeneracy(2 * j + 1), number(j), k, number(j - 1), k);
     }
     folder.file("made.cat", text);
@@ -132,7 +132,7 @@ TEST_F(KeptList, IsReadAnewWhereItsBytesAreDamaged) {
     bad[place] = static_cast<char>(bad[place] ^ 0x20);
     std::ofstream(kept_file(), std::ios::binary) << bad;
     expect_same(first, open());
-    EXPECT_EQ(read_file(kept_file().string()), good) << "byte " << place;
+    EXPECT_TRUE(read_file(kept_file().string()) == good) << "byte " << place;
   }
   for (const std::size_t length : {std::size_t{0}, std::size_t{10}, std::size_t{64}, good.size() - 8}) {
     std::ofstream(kept_file(), std::ios::binary) << good.substr(0, length);
