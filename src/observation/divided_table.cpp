@@ -74,11 +74,15 @@ class Sorter {
         index_.emplace(fmt::format("{}:{}{}", source.size(), source, species), parts.size());
     if (is_new) {
       parts.push_back({source.empty() ? std::nullopt : std::optional(source),
-                       species.empty() ? std::nullopt : std::optional(species), line, 0, start_});
+                       species.empty() ? std::nullopt : std::optional(species), line, line, {}, 0, start_});
       runs.emplace_back();
     }
     TablePart& part = parts[place->second];
     std::vector<Run>& of_part = runs[place->second];
+    if (part.rows > 0 && line != part.last_line + 1) {
+      part.gaps = fingerprint(part.gaps + fmt::format("{}", line));
+    }
+    part.last_line = line;
     ++part.rows;
     part.fingerprint = fingerprint(part.fingerprint + std::string(bytes));
     const bool goes_on = !of_part.empty() && of_part.back().begin + of_part.back().size == run.begin;
@@ -143,7 +147,7 @@ class TextForm : public DividedTable::Form {
   static constexpr std::size_t kBlock = std::size_t{4} << 20;
   static constexpr std::size_t kLargestRecord = std::size_t{64} << 20;
 
-  explicit TextForm(const std::string& path) : Form(path), file_(opened(path)) {
+  explicit TextForm(const std::string& path) : Form(path), file_(std::make_unique<std::ifstream>(opened(path))) {
     fill(kBlock);
     if (block_.starts_with("\xEF\xBB\xBF")) skip(3);
     read_header();
@@ -151,8 +155,8 @@ class TextForm : public DividedTable::Form {
     while (read_record(sorter)) {
     }
     take(std::move(sorter));
-    file_ = {};
-    block_ = {};
+    file_.reset();  // thousands of tables may be held
+    std::string().swap(block_);
   }
 
   [[nodiscard]] IntensityTable read(std::size_t part) const override {
@@ -175,10 +179,10 @@ class TextForm : public DividedTable::Form {
   /// Reads more of the file, up to `size` bytes in the block.
   void fill(std::size_t size) {
     const std::size_t held = block_.size();
-    if (held >= size || !file_) return;
+    if (held >= size || !*file_) return;
     block_.resize(size);
-    file_.read(block_.data() + held, static_cast<std::streamsize>(size - held));
-    block_.resize(held + static_cast<std::size_t>(file_.gcount()));
+    file_->read(block_.data() + held, static_cast<std::streamsize>(size - held));
+    block_.resize(held + static_cast<std::size_t>(file_->gcount()));
   }
 
   /// Leaves out the first bytes of the block.
@@ -220,7 +224,7 @@ class TextForm : public DividedTable::Form {
   /// on beyond it, and is read again with more.
   bool read_record(Sorter& sorter) {
     for (std::size_t size = kBlock;; size *= 2) {
-      const bool more_to_come = static_cast<bool>(file_);
+      const bool more_to_come = static_cast<bool>(*file_);
       raw::RecordReader reader(rest(), path_, line_, header_.separator);
       try {
         auto record = reader.next();
@@ -266,7 +270,7 @@ class TextForm : public DividedTable::Form {
     if (print != parts_[part].fingerprint) refuse_changed(path_);
   }
 
-  std::ifstream file_;
+  std::unique_ptr<std::ifstream> file_;  ///< only while it is gone through
   std::string block_;
   std::size_t at_ = 0;        ///< where the rest of the block begins
   std::uint64_t offset_ = 0;  ///< the same in the file

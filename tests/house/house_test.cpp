@@ -39,6 +39,7 @@ const std::vector<std::pair<std::string, std::set<std::string>>> kLibraries = {
     {"wcslib/", {"physics", "observation"}},
     {"nlohmann/", {"report", "survey"}},
     {"sqlite", {"survey"}},
+    {"kainjow/", {"report"}},
     {"yaml-cpp/", {"species", "observation", "analysis", "report", "survey"}},
     {"tbb/", {"survey"}},
 };

@@ -15,6 +15,8 @@ struct TablePart {
   std::optional<std::string> source;   ///< as its rows name it
   std::optional<std::string> species;  ///< likewise
   std::size_t first_line = 0;          ///< line or row of its first row
+  std::size_t last_line = 0;           ///< likewise
+  std::string gaps;                    ///< fingerprint of where its rows are not one after the other
   std::size_t rows = 0;
   std::string fingerprint;  ///< of the columns (names, units) and of these rows; not of where they stand
 };

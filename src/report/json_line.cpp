@@ -1,0 +1,187 @@
+#include <fmt/format.h>
+
+#include <trotline/base/errors.hpp>
+#include <trotline/report/json.hpp>
+#include <trotline/report/json_line.hpp>
+
+#include "json_document.hpp"
+
+namespace trotline {
+namespace {
+
+// Reading the keys that json.cpp writes, in its order. JsonLine.ReadsEveryKeyBack finds one that is
+// forgotten.
+
+void get(const Json& json, const char* key, double& number) {
+  if (const auto found = json.find(key); found != json.end()) {
+    number = found->is_null() ? kNotKnown : found->get<double>();
+  }
+}
+
+template <class Value>
+void get(const Json& json, const char* key, Value& value) {
+  if (const auto found = json.find(key); found != json.end()) found->get_to(value);
+}
+
+void get(const Json& json, const char* key, Estimate& estimate) {
+  const auto found = json.find(key);
+  if (found == json.end()) return;
+  get(*found, "value", estimate.value);
+  get(*found, "error", estimate.error);
+  get(*found, "low68", estimate.low68);
+  get(*found, "high68", estimate.high68);
+  get(*found, "low95", estimate.low95);
+  get(*found, "high95", estimate.high95);
+}
+
+LineResult line_of(const Json& json) {
+  LineResult line;
+  get(json, "transition", line.transition);
+  get(json, "frequency_mhz", line.frequency_mhz);
+  get(json, "upper_energy_k", line.upper_energy_k);
+  get(json, "upper_degeneracy", line.upper_degeneracy);
+  get(json, "einstein_a_s1", line.einstein_a_s1);
+  get(json, "intensity_k_km_s", line.intensity_k_km_s);
+  get(json, "intensity_error_k_km_s", line.intensity_error_k_km_s);
+  get(json, "calibration_error", line.calibration_error);
+  get(json, "calibration_group", line.calibration_group);
+  get(json, "limit", line.limit);
+  get(json, "blend", line.blend);
+  get(json, "ln_nu_gu", line.ln_nu_gu);
+  get(json, "ln_nu_gu_error", line.ln_nu_gu_error);
+  get(json, "optical_depth", line.optical_depth);
+  get(json, "filling", line.filling);
+  get(json, "beam_fwhm_arcsec", line.beam_fwhm_arcsec);
+  get(json, "fwhm_km_s", line.fwhm_km_s);
+  get(json, "model_intensity_k_km_s", line.model_intensity_k_km_s);
+  get(json, "residual_sigma", line.residual_sigma);
+  get(json, "used", line.used);
+  get(json, "why_unused", line.why_unused);
+  get(json, "table_line", line.table_line);
+  get(json, "note", line.note);
+  return line;
+}
+
+Check check_of(const Json& json) {
+  Check check;
+  get(json, "name", check.name);
+  get(json, "figure", check.figure);
+  get(json, "meaning", check.meaning);
+  std::string outcome;
+  get(json, "outcome", outcome);
+  for (const Outcome one : {Outcome::pass, Outcome::fail, Outcome::not_testable}) {
+    if (outcome == name_of(one)) check.outcome = one;
+  }
+  return check;
+}
+
+ColumnAtTemperature column_of(const Json& json) {
+  ColumnAtTemperature column;
+  get(json, "temperature_k", column.temperature_k);
+  get(json, "column_density_cm2", column.column_density_cm2);
+  get(json, "error_cm2", column.error_cm2);
+  return column;
+}
+
+template <class Item>
+void get_list(const Json& json, const char* key, std::vector<Item>& items, Item (*item_of)(const Json&)) {
+  const auto found = json.find(key);
+  if (found == json.end()) return;
+  items.reserve(found->size());
+  for (const Json& item : found->get_ref<const Json::array_t&>()) items.push_back(item_of(item));
+}
+
+void get_status(const Json& json, Status& status) {
+  std::string name;
+  get(json, "status", name);
+  for (const Status one : {Status::done, Status::one_line, Status::not_thermal, Status::only_limits,
+                           Status::unbounded, Status::not_converged}) {
+    if (name == name_of(one)) status = one;
+  }
+}
+
+void get_answer(const Json& json, Result& result) {
+  get_status(json, result.status);
+  get(json, "message", result.message);
+  get(json, "temperature_fixed", result.temperature_fixed);
+  get(json, "temperature_k", result.temperature_k);
+  get(json, "log10_column_density_cm2", result.log10_column_density_cm2);
+  get(json, "column_density_cm2", result.column_density_cm2);
+  get(json, "correlation_lnN_T", result.correlation_ln_n_t);
+  get(json, "chi2", result.chi2);
+  get(json, "dof", result.dof);
+  get(json, "p_value", result.p_value);
+}
+
+void get_basis(const Json& json, Result& result) {
+  if (const auto q = json.find("partition_function"); q != json.end()) {
+    get(*q, "value", result.partition_function);
+    get(*q, "source", result.partition_function_source);
+  }
+  get(json, "source_size_arcsec", result.source_size_arcsec);
+  get(json, "background_k", result.background_k);
+  get(json, "assumptions", result.assumptions);
+  if (const auto line = json.find("diagram_line"); line != json.end()) {
+    get(*line, "intercept", result.diagram_line.intercept);
+    get(*line, "slope_per_k", result.diagram_line.slope_per_k);
+    get(*line, "intercept_variance", result.diagram_line.intercept_variance);
+    get(*line, "slope_variance", result.diagram_line.slope_variance);
+    get(*line, "covariance", result.diagram_line.covariance);
+  }
+}
+
+void get_provenance(const Json& json, Provenance& provenance) {
+  const auto found = json.find("provenance");
+  if (found == json.end()) return;
+  get(*found, "version", provenance.version);
+  get(*found, "table_file", provenance.table_file);
+  get(*found, "table_fingerprint", provenance.table_fingerprint);
+  get(*found, "species_file", provenance.species_file);
+  get(*found, "species_fingerprint", provenance.species_fingerprint);
+  get(*found, "data_sources", provenance.data_sources);
+  get(*found, "constants", provenance.constants);
+  if (const auto options = found->find("options"); options != found->end()) {
+    for (const auto& [key, value] : options->items())
+      provenance.options.emplace_back(key, value.get<std::string>());
+  }
+}
+
+Result result_of(const Json& json) {
+  Result result;
+  get(json, "source", result.source);
+  get(json, "species", result.species);
+  get(json, "formula", result.formula);
+  get(json, "method", result.method);
+  get_answer(json, result);
+  get_basis(json, result);
+  get_list(json, "columns_at_temperatures", result.columns_at_temperatures, column_of);
+  get_list(json, "lines", result.lines, line_of);
+  get_list(json, "checks", result.checks, check_of);
+  get(json, "verdict", result.verdict);
+  get(json, "warnings", result.warnings);
+  get_provenance(json, result.provenance);
+  return result;
+}
+
+}  // namespace
+
+std::string result_json_line(const Result& result) {
+  return result_document(result).dump(-1, ' ', false, Json::error_handler_t::replace);
+}
+
+Result parse_result_json(std::string_view text) {
+  const auto refuse = [](const std::string& found) {
+    throw InputError({found, fmt::format("a result of the schema {}", kResultSchema)});
+  };
+  try {
+    const Json json = Json::parse(text);
+    if (!json.is_object() || json.value("schema", "") != kResultSchema)
+      refuse("this is no result of trotline");
+    return result_of(json);
+  } catch (const Json::exception& error) {
+    refuse(fmt::format("this is no result of trotline: {}", error.what()));
+  }
+  return {};
+}
+
+}  // namespace trotline
