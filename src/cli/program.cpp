@@ -22,7 +22,7 @@ struct Verb {
 };
 
 const std::vector<Verb>& verbs() {
-  static const std::vector<Verb> kVerbs = {{"fit", run_fit}, {"species", run_species}};
+  static const std::vector<Verb> kVerbs = {{"fit", run_fit}, {"survey", run_survey_command}, {"species", run_species}};
   return kVerbs;
 }
 

@@ -40,7 +40,7 @@ TEST_F(Help, OfEveryVerbIsReachedInEveryWay) {
 }
 
 TEST_F(Help, FitsIntoNinetyColumns) {
-  for (const std::string verb : {"fit", "species"}) {
+  for (const std::string verb : {"fit", "survey", "species"}) {
     std::istringstream text(run({verb, "--help"}).out);
     for (std::string line; std::getline(text, line);) EXPECT_LE(line.size(), 90U) << line;
   }
