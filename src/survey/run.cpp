@@ -18,7 +18,6 @@ namespace {
 using Clock = std::chrono::steady_clock;
 
 constexpr std::size_t kJobsPerThread = 8;  // in flight, so that no thread waits for the ledger
-constexpr double kSecondsBetweenCommits = 0.25;
 constexpr double kSecondsBetweenReports = 0.1;
 
 double seconds_since(Clock::time_point start) {
@@ -70,7 +69,7 @@ class Keeper {
        : job.status == JobStatus::weak ? counts.weak
                                        : counts.failed);
     const double now = seconds_since(began_);
-    if (now - last_commit_ > kSecondsBetweenCommits) {
+    if (now - last_commit_ >= options_.seconds_between_commits) {
       ledger_.commit();
       last_commit_ = now;
     }

@@ -21,6 +21,7 @@ struct SurveyRunOptions {
   std::function<void(const SurveyProgress&)>
       on_progress;             ///< called some ten times a second, from one thread at a time
   std::function<bool()> stop;  ///< asked before every job; true ends the run early
+  double seconds_between_commits = 0.25;  ///< what a kill can cost, at most; 0: nothing that is finished
 };
 
 struct SurveyOutcome {
@@ -31,7 +32,7 @@ struct SurveyOutcome {
 /// Computes the jobs of a plan that must be, over several threads, and keeps each in the ledger.
 ///
 /// Memory is bounded whatever the size of the survey: a few jobs a thread are held at a time. What is
-/// finished is made to last about four times a second; a run that is killed loses no more than that, and the
+/// finished is made to last every `seconds_between_commits`; a run that is killed loses no more than that, and the
 /// next one goes on from there. The results do not depend on the number of threads.
 /// A job that throws is kept as failed with its message, and costs the others nothing.
 /// @throws SystemError  when the ledger cannot be written; what was kept before stays
