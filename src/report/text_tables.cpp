@@ -1,5 +1,7 @@
 #include <fmt/format.h>
 
+#include <array>
+#include <charconv>
 #include <cmath>
 #include <cstdio>
 #include <cstring>
@@ -45,9 +47,16 @@ class TextFile {
   std::FILE* file_;
 };
 
-/// The fewest digits that read back, with the point that YAML 1.1 wants before an exponent.
+/// The fewest digits that read back, with the point that YAML 1.1 wants before an exponent. Large whole numbers
+/// have an exponent too: trailing zeros would pass for digits.
 std::string number_text(double number) {
+  constexpr double kPlainBelow = 1e7;
   std::string text = fmt::format("{}", number);
+  if (std::abs(number) >= kPlainBelow && text.find_first_of(".e") == std::string::npos) {
+    std::array<char, 32> shortest{};
+    const auto end = std::to_chars(shortest.begin(), shortest.end(), number, std::chars_format::scientific);
+    text.assign(shortest.begin(), end.ptr);
+  }
   const std::size_t power = text.find('e');
   if (power != std::string::npos && text.find('.') == std::string::npos) text.insert(power, ".0");
   return text;
