@@ -1,6 +1,7 @@
 #include <regex>
 #include <set>
 
+#include <trotline/analysis/prediction.hpp>
 #include <trotline/analysis/run_options.hpp>
 
 #include "program_fixture.hpp"
@@ -31,6 +32,16 @@ TEST_F(Help, OfFitDescribesEveryOptionAndNoOther) {
   EXPECT_EQ(options_in(outcome.out), expected);
 }
 
+TEST_F(Help, OfPredictDescribesEveryOptionAndNoOther) {
+  std::set<std::string> expected = {"out", "no-figure", "json", "help"};
+  for (const PredictionOption& option : prediction_option_table()) {
+    std::string name = option.key;
+    std::replace(name.begin(), name.end(), '_', '-');
+    expected.insert(name);
+  }
+  EXPECT_EQ(options_in(run({"predict", "--help"}).out), expected);
+}
+
 TEST_F(Help, OfEveryVerbIsReachedInEveryWay) {
   EXPECT_THAT(run({"--help"}).out, HasSubstr("fit"));
   EXPECT_THAT(run({"help"}).out, HasSubstr("species"));
@@ -40,7 +51,7 @@ TEST_F(Help, OfEveryVerbIsReachedInEveryWay) {
 }
 
 TEST_F(Help, FitsIntoNinetyColumns) {
-  for (const std::string verb : {"fit", "survey", "species"}) {
+  for (const std::string verb : {"fit", "survey", "predict", "species"}) {
     std::istringstream text(run({verb, "--help"}).out);
     for (std::string line; std::getline(text, line);) EXPECT_LE(line.size(), 90U) << line;
   }
