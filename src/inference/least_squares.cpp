@@ -89,7 +89,10 @@ Eigen::MatrixXd straight_line_design(const Eigen::VectorXd& x) {
 
 double chi2_survival(double chi2, int dof) {
   if (dof < 1 || !std::isfinite(chi2) || chi2 < 0.0) return std::numeric_limits<double>::quiet_NaN();
-  return boost::math::cdf(boost::math::complement(boost::math::chi_squared(dof), chi2));
+  // Without long doubles: a p-value needs no more digits, and takes a tenth of the time.
+  using Doubles = boost::math::policies::policy<boost::math::policies::promote_double<false>>;
+  const boost::math::chi_squared_distribution<double, Doubles> distribution(dof);
+  return boost::math::cdf(boost::math::complement(distribution, chi2));
 }
 
 }  // namespace trotline

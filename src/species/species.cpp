@@ -78,6 +78,13 @@ std::string without_subscripts(std::string_view text) {
   return out;
 }
 
+/// True when normalised_label() leaves a label as it is, found out without building it.
+bool is_normal(std::string_view label) {
+  return std::all_of(label.begin(), label.end(), [](char c) {
+    return static_cast<unsigned char>(c) < 0x80 && std::string_view(" \t\n\r_<>=").find(c) == std::string_view::npos;
+  });
+}
+
 /// True when `label` is `upper` + "-" + `lower`.
 bool is_pair(std::string_view label, std::string_view upper, std::string_view lower) {
   return label.size() == upper.size() + 1 + lower.size() && label.starts_with(upper) &&
@@ -103,9 +110,17 @@ std::string normalised_label(std::string_view label) {
 std::vector<std::size_t> transitions_labelled(const Species& species, std::string_view label) {
   const std::string wanted = normalised_label(label);
   // Levels are fewer than lines: normalise each once, and build no label of a line that does not fit.
-  std::vector<std::string> levels;
+  std::vector<std::string> respelt;
+  std::vector<std::string_view> levels;
+  respelt.reserve(species.levels.size());
   levels.reserve(species.levels.size());
-  for (const Level& level : species.levels) levels.push_back(normalised_label(level.label));
+  for (const Level& level : species.levels) {
+    if (is_normal(level.label)) {
+      levels.emplace_back(level.label);
+    } else {
+      levels.emplace_back(respelt.emplace_back(normalised_label(level.label)));
+    }
+  }
   std::vector<std::size_t> found;
   for (std::size_t i = 0; i < species.transitions.size(); ++i) {
     const Transition& line = species.transitions[i];
