@@ -80,6 +80,7 @@ ColumnAtTemperature column_of(const Json& json) {
   get(json, "temperature_k", column.temperature_k);
   get(json, "column_density_cm2", column.column_density_cm2);
   get(json, "error_cm2", column.error_cm2);
+  get(json, "upper_limit", column.upper_limit);
   return column;
 }
 
@@ -95,7 +96,7 @@ void get_status(const Json& json, Status& status) {
   std::string name;
   get(json, "status", name);
   for (const Status one : {Status::done, Status::one_line, Status::not_thermal, Status::only_limits,
-                           Status::unbounded, Status::not_converged}) {
+                           Status::no_lines, Status::unbounded, Status::not_converged}) {
     if (name == name_of(one)) status = one;
   }
 }

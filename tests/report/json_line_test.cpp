@@ -18,7 +18,7 @@ Result full_result() {
   Result result = invented_result({.lines = 6, .limits = 1, .unused = 1});
   result.temperature_fixed = true;
   result.source_size_arcsec = 8.5;
-  result.columns_at_temperatures = {{10.0, 1e13, 1e12}, {kNotKnown, 2e13, 1e300}};
+  result.columns_at_temperatures = {{10.0, 1e13, 1e12}, {kNotKnown, 2e13, 1e300, true}};
   for (LineResult& line : result.lines) {
     line.calibration_error = 0.1;
     line.calibration_group = "band 3";
@@ -33,6 +33,14 @@ TEST(JsonLine, ReadsEveryKeyBack) {
     const std::string json = result_json(result);
     EXPECT_EQ(result_json(parse_result_json(json)), json);
     EXPECT_EQ(result_json(parse_result_json(result_json_line(result))), json);
+  }
+}
+
+TEST(JsonLine, ReadsEveryStatusBack) {
+  for (int i = 0; i <= static_cast<int>(Status::not_converged); ++i) {
+    Result result = full_result();
+    result.status = static_cast<Status>(i);
+    EXPECT_EQ(parse_result_json(result_json(result)).status, result.status) << name_of(result.status);
   }
 }
 
