@@ -125,7 +125,7 @@ std::string lines_panel(const Prediction& prediction, bool alone) {
       "  set logscale y\n  set xrange [{:.9g}:{:.9g}]\n  set yrange [{:.4g}:{:.4g}]\n",
       alone ? 0.16 : 0.56, 0.95, low - room, high + room, floor_k, most * 4.0);
   if (prediction.has_noise) {
-    text += "  set label 3 \"crosses: rms of a channel\" at graph 0.985,0.05 right textcolor rgb umber\n";
+    text += "  set label 3 \"crosses: rms of a channel\" at graph 0.01,0.96 left textcolor rgb umber\n";
   }
   text += fmt::format(
       "  plot \"prediction-lines.tsv\" using ($5==0?$1:NaN):2:(0):({0:.4g}-$2) with vectors nohead linewidth 1.1 "
