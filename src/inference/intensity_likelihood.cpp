@@ -301,6 +301,25 @@ void IntensityLikelihood::linearise_priors(LikelihoodWorkspace& workspace) const
   }
 }
 
+Eigen::MatrixXd IntensityLikelihood::full_design(const Eigen::Ref<const Eigen::VectorXd>& free,
+                                                 LikelihoodWorkspace& workspace) const {
+  (void)linearise(free, workspace);
+  const auto groups = static_cast<Eigen::Index>(groups_.size());
+  Eigen::MatrixXd design = Eigen::MatrixXd::Zero(residual_count(), free_count() + groups);
+  design.leftCols(free_count()).bottomRows(residual_count() - data_count() - groups) =
+      workspace.jacobian.bottomRows(residual_count() - data_count() - groups);
+  for (Eigen::Index i = 0; i < data_count(); ++i) {
+    design.row(i).head(free_count()) = workspace.residual_slopes[i] * workspace.slopes.row(i);
+    const int group = group_of_datum_[static_cast<std::size_t>(i)];
+    if (group < 0) continue;
+    design(i, free_count() + group) = workspace.residual_slopes[i] *
+                                      problem_.data[static_cast<std::size_t>(i)].calibration_error *
+                                      workspace.predicted[i];
+  }
+  design.block(data_count(), free_count(), groups, groups).setIdentity();
+  return design;
+}
+
 Eigen::VectorXd IntensityLikelihood::gradient(const Eigen::Ref<const Eigen::VectorXd>& free,
                                               LikelihoodWorkspace& workspace) const {
   spread(free, workspace.state);

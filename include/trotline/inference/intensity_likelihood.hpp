@@ -112,6 +112,11 @@ class IntensityLikelihood {
   [[nodiscard]] Eigen::MatrixXd curvature(const Eigen::VectorXd& free, const Eigen::VectorXd& steps,
                                           LikelihoodWorkspace& workspace) const;
 
+  /// The linearised problem with the calibration as parameters of its own: rows as residuals, columns the free
+  /// entries and then z of each group. `workspace.residuals` and `residual_slopes` belong to it.
+  [[nodiscard]] Eigen::MatrixXd full_design(const Eigen::Ref<const Eigen::VectorXd>& free,
+                                            LikelihoodWorkspace& workspace) const;
+
   /// What cost leaves out of -ln L; needed where likelihoods of different noise models are compared.
   [[nodiscard]] double constant() const { return constant_; }
 
