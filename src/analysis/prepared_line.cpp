@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <set>
 
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
@@ -94,11 +95,14 @@ std::string reason_to_leave_out(const LineResult& line, const RunOptions& option
   if (is_listed(options.without_lines, line.transition)) return "left out by the option 'without'";
   if (!is_inside(options.upper_energy_k, line.upper_energy_k)) return "outside the option 'upper_energy'";
   if (!is_inside(options.frequency_hz, line.frequency_mhz * 1e6)) return "outside the option 'frequency'";
-  if (line.limit) return "an upper limit: compared with the model, not fitted";
-  if (!line.blend.empty()) return "a blend: the straight line cannot part it";
-  if (!(line.intensity_k_km_s > 0.0)) return "the intensity is not above zero and has no logarithm";
+  if (!fits_intensities(options)) {
+    if (line.limit) return "an upper limit: compared with the model, not fitted";
+    if (!line.blend.empty()) return "a blend: the straight line cannot part it";
+    if (!(line.intensity_k_km_s > 0.0)) return "the intensity is not above zero and has no logarithm";
+  }
+  if (line.limit) return {};
   const double snr = line.intensity_k_km_s / line.intensity_error_k_km_s;
-  if (snr < options.least_snr) return fmt::format("W/sigma = {:.1f}, below the option 'least_snr'", snr);
+  if (options.least_snr > 0.0 && snr < options.least_snr) return fmt::format("W/sigma = {:.1f}, below the option 'least_snr'", snr);
   return {};
 }
 
@@ -122,6 +126,9 @@ PreparedLine prepare(const MatchedRow& matched, const Species& species, const Ru
   const Level& upper = species.levels[transition.upper];
   PreparedLine line;
   line.constants = {transition.frequency_hz, upper.energy_k, upper.degeneracy, transition.einstein_a_per_s};
+  line.transition = matched.transition;
+  line.spin = upper.spin;
+  line.upper_label = upper.label;
 
   LineResult& result = line.result;
   result.transition = transition_label(species, transition);
@@ -156,7 +163,24 @@ PreparedLine prepare(const MatchedRow& matched, const Species& species, const Ru
   return line;
 }
 
+/// A blend is one measurement: it is fitted whole or not at all.
+void keep_blends_whole(std::vector<PreparedLine>& lines) {
+  std::set<std::string> broken;
+  for (const PreparedLine& line : lines) {
+    if (!line.result.blend.empty() && !line.result.used) broken.insert(line.result.blend);
+  }
+  for (PreparedLine& line : lines) {
+    if (!line.result.used || !broken.contains(line.result.blend)) continue;
+    line.result.used = false;
+    line.result.why_unused = "its blend holds a line that is left out";
+  }
+}
+
 }  // namespace
+
+bool fits_intensities(const RunOptions& options) {
+  return options.method == "likelihood" || options.method == "robust";
+}
 
 std::vector<PreparedLine> prepare_lines(const MatchedTable& matched, const Species& species,
                                         const RunOptions& options, const std::string& table_file) {
@@ -164,6 +188,7 @@ std::vector<PreparedLine> prepare_lines(const MatchedTable& matched, const Speci
   for (const MatchedRow& row : matched.rows) {
     lines.push_back(prepare(row, species, options, Place{table_file, row.row.line_number}));
   }
+  keep_blends_whole(lines);
   check_labels_exist(options.only_lines, "only", lines, table_file);
   check_labels_exist(options.without_lines, "without", lines, table_file);
   return lines;

@@ -15,7 +15,13 @@ struct PreparedLine {
   LineResult result;           ///< filled as far as it can be before a fit
   double ln_thin = kNotKnown;  ///< ln(N_u/g_u) [cm^-2], thin, filling corrected, background not; NaN for W <= 0
   double ln_noise_sigma = kNotKnown;  ///< sigma / W
+  std::size_t transition = 0;         ///< index into Species::transitions
+  std::string spin;                   ///< spin isomer of the upper level; empty where there is only one
+  std::string upper_label;            ///< quantum numbers of the upper level
 };
+
+/// True for the methods that fit intensities: limits, blends and negative intensities are data to them.
+[[nodiscard]] bool fits_intensities(const RunOptions& options);
 
 /// Main-beam scale, filling, calibration and selection of every row.
 /// @throws InputError naming the row that lacks a beam or an efficiency

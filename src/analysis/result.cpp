@@ -16,6 +16,14 @@ const char* name_of(Status status) {
       return "no lines";
     case Status::unbounded:
       return "unbounded";
+    case Status::degenerate:
+      return "degenerate";
+    case Status::several:
+      return "several answers";
+    case Status::at_bound:
+      return "at a bound";
+    case Status::no_solution:
+      return "no solution";
     case Status::not_converged:
       return "not converged";
   }

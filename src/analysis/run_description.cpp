@@ -59,7 +59,7 @@ void set_key(RunDescription& run, const std::string& key, const std::string& val
                                "one of: " + listed(keys, keys.size()), did_you_mean(key, keys)});
     }
     try {
-      set_run_option(run.options, key, value);
+      set_run_option(run.options, key, key == "collisions" ? beside(name, value) : value);
     } catch (const InputError& error) {
       throw InputError(place, error.complaint());
     }

@@ -117,6 +117,11 @@ RunOption make_labels(const std::string& key, const std::string& help,
 }
 
 void set_background(RunOptions& options, const std::string& text) {
+  options.background_free = lower_case(trimmed(text)) == "free";
+  if (options.background_free) {
+    options.background_k = constants::kCosmicBackgroundK;  // where the fit starts
+    return;
+  }
   options.background_k = parse_quantity(text, Dimension::temperature);
   if (options.background_k < 0.0) {
     throw InputError({fmt::format("'{}' is below zero", text), "a background of 0 K or more"});
@@ -132,17 +137,108 @@ void set_least_snr(RunOptions& options, const std::string& text) {
   if (options.least_snr < 0.0) throw InputError({fmt::format("'{}' is below zero", text), "0 or more"});
 }
 
+void set_source_size(RunOptions& options, const std::string& text) {
+  const std::string word = lower_case(trimmed(text));
+  options.source_size_free = word == "free";
+  options.source_size_rad.reset();
+  if (word != "free" && word != "none") options.source_size_rad = positive(text, Dimension::angle);
+}
+
+std::string show_source_size(const RunOptions& options) {
+  if (options.source_size_free) return "free";
+  return options.source_size_rad ? show_number(*options.source_size_rad / kRadPerArcsec, "arcsec") : "none";
+}
+
+/// "40 K +/- 5 K", or with the sign itself.
+PriorKnowledge parse_prior(const std::string& text, Dimension dimension) {
+  for (const std::string sign : {"+/-", "±"}) {
+    const std::size_t at = text.find(sign);
+    if (at == std::string::npos) continue;
+    return {positive(std::string(trimmed(text.substr(0, at))), dimension),
+            positive(std::string(trimmed(text.substr(at + sign.size()))), dimension)};
+  }
+  throw InputError({fmt::format("'{}' has no error", printable(text)), "a value and its error, as '40 K +/- 5 K'"});
+}
+
+RunOption make_prior(const std::string& key, const std::string& example, const std::string& help,
+                     Dimension dimension, std::optional<PriorKnowledge> RunOptions::*member, double scale,
+                     const char* unit) {
+  return {key, example, help,
+          [=](RunOptions& options, const std::string& text) { options.*member = parse_prior(text, dimension); },
+          [=](const RunOptions& options) {
+            const auto& prior = options.*member;
+            return prior ? fmt::format("{:.10g} {} +/- {:.10g} {}", prior->value / scale, unit, prior->sigma / scale, unit)
+                         : std::string("not given");
+          }};
+}
+
+RunOption make_words(const std::string& key, const std::string& example, const std::string& help,
+                     const std::vector<std::string>& words, std::string RunOptions::*member) {
+  return {key, example, help,
+          [=](RunOptions& options, const std::string& text) { options.*member = one_of(text, words); },
+          [=](const RunOptions& options) { return options.*member; }};
+}
+
+RunOption make_number(const std::string& key, const std::string& example, const std::string& help,
+                      Dimension dimension, std::optional<double> RunOptions::*member, double per_shown,
+                      const char* unit) {
+  return {key, example, help,
+          [=](RunOptions& options, const std::string& text) {
+            options.*member = positive(text, dimension) / per_shown;
+          },
+          [=](const RunOptions& options) {
+            const auto& value = options.*member;
+            return value ? show_number(*value, unit) : std::string("not given");
+          }};
+}
+
+/// The options of the estimators beyond the straight line.
+void add_model_options(std::vector<RunOption>& table) {
+  table.push_back(make_words("opacity", "automatic",
+                             "curve-of-growth, line-centre or thin; automatic: the curve of growth where lines have widths",
+                             {"automatic", "curve-of-growth", "line-centre", "thin"}, &RunOptions::opacity));
+  table.push_back(make_words("intervals", "profile", "profile (of the likelihood) or curvature (at the best fit)",
+                             {"profile", "curvature"}, &RunOptions::intervals));
+  table.push_back({"components", "1", "how many components, each with its own T and N: 1 or 2",
+                   [](RunOptions& o, const std::string& text) { o.components = one_of(text, {"1", "2"}) == "2" ? 2 : 1; },
+                   [](const RunOptions& o) { return std::to_string(o.components); }});
+  table.push_back({"isomers", "together", "together, or apart: a column density for each spin isomer",
+                   [](RunOptions& o, const std::string& text) {
+                     o.isomers_apart = one_of(text, {"together", "apart"}) == "apart";
+                   },
+                   [](const RunOptions& o) { return std::string(o.isomers_apart ? "apart" : "together"); }});
+  table.push_back(make_number("column_density", "1e14 cm-2", "take this column density and fit T only",
+                              Dimension::column_density, &RunOptions::column_density_per_cm2, 1e4, "cm-2"));
+  table.push_back(make_range("temperature_range", "5 K..300 K", "temperatures that are looked at",
+                             Dimension::temperature, &RunOptions::temperature_range_k, 1.0, "K"));
+  table.push_back(make_prior("temperature_prior", "40 K +/- 5 K", "what is known of T beforehand",
+                             Dimension::temperature, &RunOptions::temperature_prior_k, 1.0, "K"));
+  table.push_back(make_range("source_size_range", "0.5 arcsec..30 arcsec", "sizes that are looked at, where it is free",
+                             Dimension::angle, &RunOptions::source_size_range_rad, kRadPerArcsec, "arcsec"));
+  table.push_back(make_prior("source_size_prior", "4 arcsec +/- 1 arcsec", "what is known of a free size beforehand",
+                             Dimension::angle, &RunOptions::source_size_prior_rad, kRadPerArcsec, "arcsec"));
+  table.push_back({"compare_models", "no", "set the models side by side that these lines allow: yes or no",
+                   [](RunOptions& o, const std::string& text) { o.compare_models = yes_or_no(text); },
+                   [](const RunOptions& o) { return std::string(o.compare_models ? "yes" : "no"); }});
+  table.push_back({"collisions", "FILE", "file of collision rates, for critical densities",
+                   [](RunOptions& o, const std::string& text) { o.collisions = std::string(trimmed(text)); },
+                   [](const RunOptions& o) { return o.collisions.empty() ? std::string("not given") : o.collisions; }});
+  table.push_back(make_number("density", "1e5 cm-3", "density of the collision partner, to hold against critical densities",
+                              Dimension::number_density, &RunOptions::density_per_cm3, 1e6, "cm-3"));
+}
+
 std::vector<RunOption> make_table() {
   std::vector<RunOption> table;
-  table.push_back({"method", "line", "how N and T are estimated",
-                   [](RunOptions& o, const std::string& text) { o.method = one_of(text, {"line"}); },
-                   [](const RunOptions& o) { return o.method; }});
+  table.push_back(make_words("method", "line", "how N and T are estimated: line, opacity-line, likelihood, robust",
+                             {"line", "opacity-line", "likelihood", "robust"}, &RunOptions::method));
   table.push_back(make({"temperature", "45 K", "take this temperature and fit N only", Dimension::temperature,
                         &RunOptions::temperature_k, 1.0, "K"}));
-  table.push_back({"background", "2.7255 K", "temperature of the background behind the lines; 0 K for none",
-                   set_background, [](const RunOptions& o) { return show_number(o.background_k, "K"); }});
-  table.push_back(make({"source_size", "8 arcsec", "size of the source, for beam filling; without it f = 1",
-                        Dimension::angle, &RunOptions::source_size_rad, kRadPerArcsec, "arcsec"}));
+  table.push_back({"background", "2.7255 K", "temperature of the background behind the lines; 0 K for none, or free",
+                   set_background, [](const RunOptions& o) {
+                     return o.background_free ? std::string("free") : show_number(o.background_k, "K");
+                   }});
+  table.push_back({"source_size", "8 arcsec", "size of the source, for beam filling: a size, free or none (f = 1)",
+                   set_source_size, show_source_size});
   table.push_back({"source_shape", "gaussian", "gaussian (size is the FWHM) or disc (size is the diameter)",
                    [](RunOptions& o, const std::string& text) {
                      o.source_shape = one_of(text, {"gaussian", "disc"}) == "disc" ? SourceShape::disc
@@ -174,6 +270,7 @@ std::vector<RunOption> make_table() {
                    [](const RunOptions& o) { return show_number(o.least_snr, ""); }});
   table.push_back({"frequency_tolerance", "0.5 MHz", "how far a frequency in the table may be off", set_tolerance,
                    [](const RunOptions& o) { return show_number(o.frequency_tolerance_hz / 1e6, "MHz"); }});
+  add_model_options(table);
   table.push_back({"source", "NAME", "which source of a table that holds several",
                    [](RunOptions& o, const std::string& text) { o.source = text; },
                    [](const RunOptions& o) { return o.source ? *o.source : std::string("not given"); }});

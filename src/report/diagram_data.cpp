@@ -48,6 +48,10 @@ NamedBytes points_file(const DiagramLayout& layout) {
 NamedBytes line_file(const DiagramLayout& layout) {
   std::string bytes = "# E_u/k [K]\tfitted ln(N_u/g_u)\t68 % low\t68 % high\n";
   for (const DiagramSample& sample : layout.fit) {
+    if (std::isnan(sample.energy_k)) {  // between two curves
+      bytes += "\n";
+      continue;
+    }
     bytes += row({number(sample.energy_k), number(sample.center), number(sample.low), number(sample.high)});
   }
   return {"diagram-line.tsv", bytes};

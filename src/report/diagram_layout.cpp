@@ -174,6 +174,41 @@ void sample_fit(DiagramLayout& layout, const DiagramLine& line) {
   }
 }
 
+/// Height and band of a curve between its points; the ends go on as they are.
+DiagramSample on_curve(const DiagramCurve& curve, double energy_k) {
+  const auto& points = curve.points;
+  std::size_t i = 1;
+  while (i + 1 < points.size() && points[i].energy_k < energy_k) ++i;
+  const DiagramCurvePoint& a = points[i - 1];
+  const DiagramCurvePoint& b = points[i];
+  const double share = (energy_k - a.energy_k) / (b.energy_k - a.energy_k);
+  const auto between = [&](double low, double high) { return low + share * (high - low); };
+  return {energy_k, between(a.ln_nu_gu, b.ln_nu_gu), between(a.low68, b.low68), between(a.high68, b.high68)};
+}
+
+/// Curves one behind the other, each followed by a sample that is not a number.
+void sample_curves(DiagramLayout& layout, const std::vector<DiagramCurve>& curves) {
+  const Axis& y = layout.ln_nu_gu;
+  for (const DiagramCurve& curve : curves) {
+    if (curve.points.size() < 2) continue;
+    for (int i = 0; i <= kSamples; ++i) {
+      const double energy_k = layout.energy.low + (layout.energy.high - layout.energy.low) * i / kSamples;
+      DiagramSample sample = on_curve(curve, energy_k);
+      if (!std::isfinite(sample.center) || sample.center < y.low || sample.center > y.high) continue;
+      sample.low = std::isfinite(sample.low) ? std::clamp(sample.low, y.low, y.high) : sample.center;
+      sample.high = std::isfinite(sample.high) ? std::clamp(sample.high, y.low, y.high) : sample.center;
+      layout.fit.push_back(sample);
+    }
+    layout.fit.push_back({kNotKnown, kNotKnown, kNotKnown, kNotKnown});
+  }
+}
+
+void sample_model(DiagramLayout& layout, const Result& result) {
+  layout.fit.clear();
+  sample_fit(layout, result.diagram_line);
+  sample_curves(layout, result.diagram_curves);
+}
+
 void finish_points(DiagramLayout& layout) {
   const double arrow = kArrowMm / (layout.diagram_mm.top - layout.diagram_mm.bottom) *
                        (layout.ln_nu_gu.high - layout.ln_nu_gu.low);
@@ -241,6 +276,7 @@ double cover_of(const Box& box, const DiagramLayout& layout) {
     cover += overlap(marker, box) ? 20.0 : crosses(bar, box) ? 5.0 : 0.0;
   }
   for (const DiagramSample& sample : layout.fit) {
+    if (std::isnan(sample.energy_k)) continue;
     const double x = page.x(sample.energy_k);
     cover += crosses(Segment{x, page.y(sample.low), x, page.y(sample.high)}, box) ? 1.0 : 0.0;
   }
@@ -352,15 +388,35 @@ LabelScene scene_of(const DiagramLayout& layout, const std::vector<WantedLabel>&
     const double tip = page.y(point.arrow_end);
     scene.forbidden.push_back({x - 0.7, tip, x + 0.7, page.y(point.ln_nu_gu) - scene.marker_radius});
   }
-  std::vector<const DiagramSample*> inside;
+  const DiagramSample* start = nullptr;  // of a stretch inside of the panel; a straight line is one stretch
+  const DiagramSample* last = nullptr;
+  const auto add_stretch = [&] {
+    if (start != nullptr && last != start) {
+      scene.lines.push_back({page.x(start->energy_k), page.y(start->center), page.x(last->energy_k),
+                             page.y(last->center)});
+    }
+  };
+  constexpr int kChord = 12;  // samples of a curve that count as straight
+  int in_chord = 0;
+  const bool curved = std::any_of(layout.fit.begin(), layout.fit.end(),
+                                  [](const DiagramSample& sample) { return std::isnan(sample.energy_k); });
   for (const DiagramSample& sample : layout.fit) {
-    if (sample.center > layout.ln_nu_gu.low && sample.center < layout.ln_nu_gu.high)
-      inside.push_back(&sample);
+    const bool inside = sample.center > layout.ln_nu_gu.low && sample.center < layout.ln_nu_gu.high;
+    if (!inside) {
+      if (std::isnan(sample.energy_k)) {
+        add_stretch();
+        start = last = nullptr;
+      }
+      continue;
+    }
+    if (start == nullptr) start = &sample;
+    last = &sample;
+    if (curved && ++in_chord % kChord == 0) {
+      add_stretch();
+      start = last;
+    }
   }
-  if (inside.size() > 1) {  // one straight line
-    scene.lines.push_back({page.x(inside.front()->energy_k), page.y(inside.front()->center),
-                           page.x(inside.back()->energy_k), page.y(inside.back()->center)});
-  }
+  add_stretch();
   return scene;
 }
 
@@ -403,13 +459,12 @@ DiagramLayout lay_out_diagram(const Result& result, const FigureSize& size) {
   const double panel = size.height_mm - kTopMargin - kBottomMargin - kResidualHeight - kBetweenPanels;
   layout.ln_nu_gu = ordinate_axis(layout.points, result, layout.energy, panel);
   place_panels(layout);
-  sample_fit(layout, result.diagram_line);
+  sample_model(layout, result);
   const Block block = block_of(result);
   if (cover_of(corner_for(block, layout), layout) > 0.0) {
     make_headroom(layout, block);
     place_panels(layout);
-    layout.fit.clear();
-    sample_fit(layout, result.diagram_line);
+    sample_model(layout, result);
   }
   finish_points(layout);
   const Box corner = corner_for(block, layout);

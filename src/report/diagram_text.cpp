@@ -71,6 +71,14 @@ DiagramAnswer diagram_answer(const Result& result) {
       return {{"upper limits only"}, {}};
     case Status::no_lines:
       return {{"no line left to fit"}, {}};
+    case Status::degenerate:
+      return {{"ranges only"}, {"the lines do not hold all parameters"}};
+    case Status::several:
+      return {{"several answers"}, {"see the report"}};
+    case Status::at_bound:
+      return {{"ranges only"}, {"best value at the end of a range"}};
+    case Status::no_solution:
+      return {{"no solution"}, {"no T agrees with its own opacities"}};
     case Status::not_converged:
       return {{"fit not converged"}, {}};
   }

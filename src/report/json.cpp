@@ -31,6 +31,8 @@ Json json_of(const LineResult& line) {
   json["fwhm_km_s"] = line.fwhm_km_s;
   json["model_intensity_k_km_s"] = line.model_intensity_k_km_s;
   json["residual_sigma"] = line.residual_sigma;
+  json["calibration_factor"] = line.calibration_factor;
+  json["critical_density_cm3"] = line.critical_density_cm3;
   json["used"] = line.used;
   json["why_unused"] = line.why_unused;
   json["table_line"] = line.table_line;
@@ -60,6 +62,57 @@ Json json_of(const ColumnAtTemperature& row) {
           {"error_cm2", row.error_cm2}};
 }
 
+Json json_of(const Component& part) {
+  return {{"name", part.name},
+          {"temperature_k", json_of(part.temperature_k)},
+          {"log10_column_density_cm2", json_of(part.log10_column_density_cm2)},
+          {"column_density_cm2", json_of(part.column_density_cm2)},
+          {"source_size_arcsec", part.source_size_arcsec}};
+}
+
+Json json_of(const FittedParameter& parameter) {
+  return {{"name", parameter.name}, {"value", parameter.value}, {"error", parameter.error}};
+}
+
+Json json_of(const Alternative& other) {
+  return {{"temperature_k", other.temperature_k},
+          {"log10_column_density_cm2", other.log10_column_density_cm2},
+          {"source_size_arcsec", other.source_size_arcsec},
+          {"delta_chi2", other.delta_chi2}};
+}
+
+Json json_of(const LeftOut& row) {
+  return {{"transition", row.transition},
+          {"standardised_residual", row.standardised_residual},
+          {"temperature_k", row.temperature_k},
+          {"temperature_error_k", row.temperature_error_k},
+          {"log10_column_density_cm2", row.log10_column_density_cm2}};
+}
+
+Json json_of(const SubsetTemperature& row) {
+  return {{"division", row.division},
+          {"subset", row.subset},
+          {"lines", row.lines},
+          {"temperature_k", row.temperature_k},
+          {"temperature_error_k", row.temperature_error_k}};
+}
+
+Json json_of(const ModelEntry& model) {
+  return {{"name", model.name},
+          {"free_count", model.free_count},
+          {"minus_2_ln_likelihood", model.minus_2_ln_likelihood},
+          {"delta_aicc", model.delta_aicc},
+          {"delta_bic", model.delta_bic},
+          {"likelihood_ratio", model.likelihood_ratio},
+          {"p_value", model.p_value},
+          {"on_boundary", model.on_boundary},
+          {"note", model.note}};
+}
+
+Json json_of(const DiagramCurvePoint& point) {
+  return {{"energy_k", point.energy_k}, {"ln_nu_gu", point.ln_nu_gu}, {"low68", point.low68}, {"high68", point.high68}};
+}
+
 Json json_of(const Provenance& provenance) {
   Json options = Json::object();
   for (const auto& [name, value] : provenance.options) options[name] = value;
@@ -73,12 +126,16 @@ Json json_of(const Provenance& provenance) {
           {"options", options}};
 }
 
+Json json_of(const DiagramCurve& curve);  // its points are a list too
+
 template <class Item>
 Json list_of(const std::vector<Item>& items) {
   Json list = Json::array();
   for (const Item& item : items) list.push_back(json_of(item));
   return list;
 }
+
+Json json_of(const DiagramCurve& curve) { return {{"name", curve.name}, {"points", list_of(curve.points)}}; }
 
 void add_answer(Json& json, const Result& result) {
   json["status"] = name_of(result.status);
@@ -101,6 +158,25 @@ void add_basis(Json& json, const Result& result) {
   json["background_k"] = result.background_k;
   json["assumptions"] = result.assumptions;
   json["diagram_line"] = json_of(result.diagram_line);
+  json["diagram_curves"] = list_of(result.diagram_curves);
+}
+
+/// What only some answers have; the lists are empty elsewhere.
+void add_details(Json& json, const Result& result) {
+  json["source_size_fit_arcsec"] = json_of(result.source_size_fit_arcsec);
+  json["components"] = list_of(result.components);
+  json["parameters"] = list_of(result.parameters);
+  json["parameter_covariance"] = result.parameter_covariance;
+  json["alternatives"] = list_of(result.alternatives);
+}
+
+void add_judgement(Json& json, const Result& result) {
+  json["checks"] = list_of(result.checks);
+  json["verdict"] = result.verdict;
+  json["leave_one_out"] = list_of(result.leave_one_out);
+  json["subset_temperatures"] = list_of(result.subset_temperatures);
+  json["models"] = list_of(result.models);
+  json["model_choice"] = result.model_choice;
 }
 
 }  // namespace
@@ -114,10 +190,10 @@ Json result_document(const Result& result) {
   json["method"] = result.method;
   add_answer(json, result);
   add_basis(json, result);
+  add_details(json, result);
   json["columns_at_temperatures"] = list_of(result.columns_at_temperatures);
   json["lines"] = list_of(result.lines);
-  json["checks"] = list_of(result.checks);
-  json["verdict"] = result.verdict;
+  add_judgement(json, result);
   json["warnings"] = result.warnings;
   json["provenance"] = json_of(result.provenance);
   return json;

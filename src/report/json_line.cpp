@@ -55,6 +55,8 @@ LineResult line_of(const Json& json) {
   get(json, "fwhm_km_s", line.fwhm_km_s);
   get(json, "model_intensity_k_km_s", line.model_intensity_k_km_s);
   get(json, "residual_sigma", line.residual_sigma);
+  get(json, "calibration_factor", line.calibration_factor);
+  get(json, "critical_density_cm3", line.critical_density_cm3);
   get(json, "used", line.used);
   get(json, "why_unused", line.why_unused);
   get(json, "table_line", line.table_line);
@@ -84,6 +86,76 @@ ColumnAtTemperature column_of(const Json& json) {
   return column;
 }
 
+Component component_of(const Json& json) {
+  Component part;
+  get(json, "name", part.name);
+  get(json, "temperature_k", part.temperature_k);
+  get(json, "log10_column_density_cm2", part.log10_column_density_cm2);
+  get(json, "column_density_cm2", part.column_density_cm2);
+  get(json, "source_size_arcsec", part.source_size_arcsec);
+  return part;
+}
+
+FittedParameter parameter_of(const Json& json) {
+  FittedParameter parameter;
+  get(json, "name", parameter.name);
+  get(json, "value", parameter.value);
+  get(json, "error", parameter.error);
+  return parameter;
+}
+
+Alternative alternative_of(const Json& json) {
+  Alternative other;
+  get(json, "temperature_k", other.temperature_k);
+  get(json, "log10_column_density_cm2", other.log10_column_density_cm2);
+  get(json, "source_size_arcsec", other.source_size_arcsec);
+  get(json, "delta_chi2", other.delta_chi2);
+  return other;
+}
+
+LeftOut left_out_of(const Json& json) {
+  LeftOut row;
+  get(json, "transition", row.transition);
+  get(json, "standardised_residual", row.standardised_residual);
+  get(json, "temperature_k", row.temperature_k);
+  get(json, "temperature_error_k", row.temperature_error_k);
+  get(json, "log10_column_density_cm2", row.log10_column_density_cm2);
+  return row;
+}
+
+SubsetTemperature subset_of(const Json& json) {
+  SubsetTemperature row;
+  get(json, "division", row.division);
+  get(json, "subset", row.subset);
+  get(json, "lines", row.lines);
+  get(json, "temperature_k", row.temperature_k);
+  get(json, "temperature_error_k", row.temperature_error_k);
+  return row;
+}
+
+ModelEntry model_of(const Json& json) {
+  ModelEntry model;
+  get(json, "name", model.name);
+  get(json, "free_count", model.free_count);
+  get(json, "minus_2_ln_likelihood", model.minus_2_ln_likelihood);
+  get(json, "delta_aicc", model.delta_aicc);
+  get(json, "delta_bic", model.delta_bic);
+  get(json, "likelihood_ratio", model.likelihood_ratio);
+  get(json, "p_value", model.p_value);
+  get(json, "on_boundary", model.on_boundary);
+  get(json, "note", model.note);
+  return model;
+}
+
+DiagramCurvePoint point_of(const Json& json) {
+  DiagramCurvePoint point;
+  get(json, "energy_k", point.energy_k);
+  get(json, "ln_nu_gu", point.ln_nu_gu);
+  get(json, "low68", point.low68);
+  get(json, "high68", point.high68);
+  return point;
+}
+
 template <class Item>
 void get_list(const Json& json, const char* key, std::vector<Item>& items, Item (*item_of)(const Json&)) {
   const auto found = json.find(key);
@@ -92,11 +164,17 @@ void get_list(const Json& json, const char* key, std::vector<Item>& items, Item 
   for (const Json& item : found->get_ref<const Json::array_t&>()) items.push_back(item_of(item));
 }
 
+DiagramCurve curve_of(const Json& json) {
+  DiagramCurve curve;
+  get(json, "name", curve.name);
+  get_list(json, "points", curve.points, point_of);
+  return curve;
+}
+
 void get_status(const Json& json, Status& status) {
   std::string name;
   get(json, "status", name);
-  for (const Status one : {Status::done, Status::one_line, Status::not_thermal, Status::only_limits,
-                           Status::no_lines, Status::unbounded, Status::not_converged}) {
+  for (const Status one : kEveryStatus) {
     if (name == name_of(one)) status = one;
   }
 }
@@ -147,6 +225,31 @@ void get_provenance(const Json& json, Provenance& provenance) {
   }
 }
 
+/// Covariances are numbers or null.
+void get_covariance(const Json& json, std::vector<std::vector<double>>& covariance) {
+  const auto found = json.find("parameter_covariance");
+  if (found == json.end()) return;
+  for (const Json& row : found->get_ref<const Json::array_t&>()) {
+    covariance.emplace_back();
+    for (const Json& cell : row.get_ref<const Json::array_t&>()) {
+      covariance.back().push_back(cell.is_null() ? kNotKnown : cell.get<double>());
+    }
+  }
+}
+
+void get_details(const Json& json, Result& result) {
+  get_list(json, "diagram_curves", result.diagram_curves, curve_of);
+  get(json, "source_size_fit_arcsec", result.source_size_fit_arcsec);
+  get_list(json, "components", result.components, component_of);
+  get_list(json, "parameters", result.parameters, parameter_of);
+  get_covariance(json, result.parameter_covariance);
+  get_list(json, "alternatives", result.alternatives, alternative_of);
+  get_list(json, "leave_one_out", result.leave_one_out, left_out_of);
+  get_list(json, "subset_temperatures", result.subset_temperatures, subset_of);
+  get_list(json, "models", result.models, model_of);
+  get(json, "model_choice", result.model_choice);
+}
+
 Result result_of(const Json& json) {
   Result result;
   get(json, "source", result.source);
@@ -155,6 +258,7 @@ Result result_of(const Json& json) {
   get(json, "method", result.method);
   get_answer(json, result);
   get_basis(json, result);
+  get_details(json, result);
   get_list(json, "columns_at_temperatures", result.columns_at_temperatures, column_of);
   get_list(json, "lines", result.lines, line_of);
   get_list(json, "checks", result.checks, check_of);

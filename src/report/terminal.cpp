@@ -112,6 +112,22 @@ bool has_range(const Estimate& estimate) {
          std::isfinite(estimate.high95);
 }
 
+/// A value with its error and ranges, or the ranges alone.
+void add_estimate(Page& page, const std::string& label, const Estimate& estimate, const std::string& unit) {
+  if (std::isfinite(estimate.value) || !has_range(estimate)) {
+    page.entry(label, with_unit(value_with_error(estimate.value, estimate.error, page.glyphs()), unit), kBold);
+    if (has_range(estimate)) add_ranges(page, estimate, unit);
+    return;
+  }
+  // Without an error the ends are rounded to a hundredth of the wider one.
+  Estimate ranges = estimate;
+  const double widest = std::max(std::isfinite(estimate.high95) ? std::abs(estimate.high95) : 0.0,
+                                 std::isfinite(estimate.low95) ? std::abs(estimate.low95) : 0.0);
+  ranges.error = 0.1 * widest;
+  page.entry(label, "no single value", kBold);
+  add_ranges(page, ranges, unit);
+}
+
 /// T and N as far as they are known; of a result that is done, also that they are not.
 void add_estimates(Page& page, const Result& result) {
   const Estimate& t = result.temperature_k;
@@ -121,14 +137,43 @@ void add_estimates(Page& page, const Result& result) {
   const char* const per_area = page.pick("cm⁻²", "cm^-2");
   if (result.temperature_fixed) {
     page.entry("T", value_with_error(t.value, 0.0, page.glyphs()) + " K, stated and not fitted", kBold);
-  } else if (done || std::isfinite(t.value)) {
-    page.entry("T_rot", with_unit(value_with_error(t.value, t.error, page.glyphs()), "K"), kBold);
-    if (done || has_range(t)) add_ranges(page, t, "K");
+  } else if (done || std::isfinite(t.value) || has_range(t)) {
+    add_estimate(page, "T_rot", t, "K");
   }
-  if (!done && !std::isfinite(n.value)) return;
-  page.entry("N_tot", with_unit(value_with_error(n.value, n.error, page.glyphs()), per_area), kBold);
-  add_ranges(page, n, per_area);
-  page.entry("log10 N", value_with_error(log_n.value, log_n.error, page.glyphs()));
+  if (!done && !std::isfinite(n.value) && !has_range(n)) return;
+  if (done && !std::isfinite(n.error) && std::isfinite(n.value)) {
+    page.entry("N_tot", significant(n.value, 4, page.glyphs()) + " " + per_area + ", stated and not fitted", kBold);
+  } else {
+    add_estimate(page, "N_tot", n, per_area);
+    if (std::isfinite(log_n.value)) page.entry("log10 N", value_with_error(log_n.value, log_n.error, page.glyphs()));
+  }
+  if (has_range(result.source_size_fit_arcsec) || std::isfinite(result.source_size_fit_arcsec.value)) {
+    add_estimate(page, "size", result.source_size_fit_arcsec, "arcsec");
+  }
+}
+
+/// The parts of an answer that has several, one row each.
+void add_components(Page& page, const Result& result) {
+  if (result.components.empty()) return;
+  TextColumn name{"", {}, false};
+  TextColumn temperature{"T [K]", {}, false};
+  TextColumn column{page.pick("N [cm⁻²]", "N [cm^-2]"), {}, false};
+  TextColumn size{"size [arcsec]", {}};
+  bool any_size = false;
+  for (const Component& part : result.components) {
+    name.cells.push_back(display_text(part.name));
+    temperature.cells.push_back(
+        value_with_error(part.temperature_k.value, part.temperature_k.error, page.glyphs()));
+    column.cells.push_back(
+        value_with_error(part.column_density_cm2.value, part.column_density_cm2.error, page.glyphs()));
+    any_size = any_size || std::isfinite(part.source_size_arcsec);
+    size.cells.push_back(significant(part.source_size_arcsec, 3, page.glyphs()));
+  }
+  std::vector<TextColumn> columns = {name, temperature, column};
+  if (any_size) columns.push_back(size);
+  for (const std::string& line : text_table(columns, page.width() - kLabelWidth, page.glyphs())) {
+    page.line(std::string(kLabelWidth, ' ') + line);
+  }
 }
 
 std::string p_value_text(double p, const Page& page) {
@@ -164,6 +209,8 @@ void add_goodness(Page& page, const Result& result) {
 }
 
 std::string filling_text(const Result& result, const Page& page) {
+  const Estimate& fitted = result.source_size_fit_arcsec;
+  if (std::isnan(result.source_size_arcsec) && has_range(fitted)) return "source size free";
   if (std::isnan(result.source_size_arcsec)) return "the source fills every beam";
   const auto [least, most] =
       std::minmax_element(result.lines.begin(), result.lines.end(),
@@ -214,6 +261,14 @@ std::string headline(Status status) {
       return "No line is left to fit.";
     case Status::unbounded:
       return "The temperature lies outside the range for which Q(T) is known.";
+    case Status::degenerate:
+      return "The lines do not hold all parameters: ranges, and no single answer.";
+    case Status::several:
+      return "Several answers describe the lines alike.";
+    case Status::at_bound:
+      return "The best value lies at the end of a range: ranges, and no single answer.";
+    case Status::no_solution:
+      return "No temperature agrees with the opacity that it implies.";
     case Status::not_converged:
       return "The fit did not converge: there is no result.";
   }
@@ -254,6 +309,7 @@ void add_answer(Page& page, const Result& result) {
   const std::string message = display_text(result.message);
   if (!message.empty()) page.entry("", message);
   add_estimates(page, result);
+  add_components(page, result);
   add_columns_at_temperatures(page, result);
   if (result.status == Status::not_thermal || result.status == Status::unbounded) {
     add_slope(page, result.diagram_line);
@@ -363,6 +419,23 @@ void add_unused(Page& page, const Result& result) {
   for (const auto& [why, lines] : reasons) page.item("-", lines + page.pick(" – ", " - ") + why, kDim);
 }
 
+/// What leaving each line out does to T: the lines that move it most.
+void add_leave_one_out(Page& page, const Result& result) {
+  if (result.leave_one_out.empty() || !(result.temperature_k.error > 0.0)) return;
+  constexpr std::size_t kMost = 3;
+  std::vector<const LeftOut*> rows;
+  for (const LeftOut& row : result.leave_one_out) rows.push_back(&row);
+  const auto shift = [&](const LeftOut* row) { return std::abs(row->temperature_k - result.temperature_k.value); };
+  std::stable_sort(rows.begin(), rows.end(), [&](const auto* a, const auto* b) { return shift(a) > shift(b); });
+  rows.resize(std::min(rows.size(), kMost));
+  std::string text;
+  for (const LeftOut* row : rows) {
+    text += fmt::format("{}{}: {} K", text.empty() ? "" : ";  ", transition_of(row->transition, page),
+                        value_with_error(row->temperature_k, row->temperature_error_k, page.glyphs()));
+  }
+  page.entry("without", text);
+}
+
 void add_checks(Page& page, const Result& result) {
   if (result.checks.empty()) return;
   page.heading("Checks");
@@ -374,6 +447,41 @@ void add_checks(Page& page, const Result& result) {
     if (!meaning.empty()) text += page.pick(" – ", " - ") + meaning;
     page.item(failed ? "!" : check.outcome == Outcome::pass ? "+" : "?", text, failed ? kRed : "");
   }
+  add_leave_one_out(page, result);
+}
+
+void add_models(Page& page, const Result& result) {
+  if (result.models.empty()) return;
+  page.heading("Models compared");
+  TextColumn name{"model", {}, false};
+  TextColumn count{"k", {}};
+  TextColumn likelihood{"-2 ln L", {}};
+  TextColumn aicc{page.pick("ΔAICc", "dAICc"), {}};
+  TextColumn bic{page.pick("ΔBIC", "dBIC"), {}};
+  TextColumn ratio{"ratio", {}};
+  TextColumn p{"p", {}};
+  bool boundary = false;
+  for (const ModelEntry& model : result.models) {
+    name.cells.push_back(display_text(model.name));
+    count.cells.push_back(std::to_string(model.free_count));
+    likelihood.cells.push_back(fixed_decimals(model.minus_2_ln_likelihood, 1, page.glyphs()));
+    aicc.cells.push_back(fixed_decimals(model.delta_aicc, 1, page.glyphs()));
+    bic.cells.push_back(fixed_decimals(model.delta_bic, 1, page.glyphs()));
+    const bool compared = std::isfinite(model.likelihood_ratio);
+    ratio.cells.push_back(compared ? fixed_decimals(model.likelihood_ratio, 1, page.glyphs()) : "");
+    p.cells.push_back(!compared ? "" : (model.on_boundary ? "(" : "") + significant(model.p_value, 2, page.glyphs()) +
+                                           (model.on_boundary ? ")" : ""));
+    boundary = boundary || (compared && model.on_boundary);
+  }
+  for (const std::string& line :
+       text_table({name, count, likelihood, aicc, bic, ratio, p}, page.width() - 2, page.glyphs())) {
+    page.line("  " + line);
+  }
+  if (boundary) page.line("  (p): the smaller model lies at the edge of the larger; p is a guide, no exact chance", kDim);
+  for (const ModelEntry& model : result.models) {
+    if (!model.note.empty()) page.item("-", display_text(model.name) + ": " + display_text(model.note));
+  }
+  if (!result.model_choice.empty()) page.item("+", display_text(result.model_choice));
 }
 
 void add_warnings(Page& page, const Result& result) {
@@ -406,6 +514,7 @@ std::string terminal_report(const Result& result, const TerminalOptions& options
   add_lines(page, result);
   add_unused(page, result);
   add_checks(page, result);
+  add_models(page, result);
   add_warnings(page, result);
   add_provenance(page, result);
   return page.text();

@@ -88,7 +88,7 @@ TEST(LinesEcsv, GivesUnitsToWhatHasADimension) {
   const std::map<std::string, std::string> expected = {{"frequency", "MHz"},
                                                        {"intensity", "K km s-1"},
                                                        {"intensity_error", "K km s-1"},
-                                                       {"beam_fwhm", "arcsec"},
+                                                       {"beam_fwhm", "arcsec"}, {"critical_density", "cm-3"},
                                                        {"fwhm", "km s-1"},
                                                        {"upper_energy", "K"},
                                                        {"einstein_a", "s-1"},

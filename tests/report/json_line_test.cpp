@@ -19,11 +19,23 @@ Result full_result() {
   result.temperature_fixed = true;
   result.source_size_arcsec = 8.5;
   result.columns_at_temperatures = {{10.0, 1e13, 1e12}, {kNotKnown, 2e13, 1e300, true}};
+  result.diagram_curves = {{"ortho", {{0.0, 25.0, 24.9, 25.1}, {100.0, 22.0, kNotKnown, 22.5}}}, {"para", {}}};
+  result.source_size_fit_arcsec = symmetric_estimate(8.5, 1.0);
+  result.components = {{"ortho", result.temperature_k, result.column_density_cm2, result.log10_column_density_cm2, 8.5}};
+  result.parameters = {{"ln_temperature_k", 4.1, 0.05}, {"background_k", 2.8, kNotKnown}};
+  result.parameter_covariance = {{0.0025, kNotKnown}, {kNotKnown, 0.01}};
+  result.alternatives = {{60.0, 14.0, 8.5, 0.0}, {12.0, 17.0, kNotKnown, 3.0}};
+  result.leave_one_out = {{"5(0)-4(0)", 1.5, 61.0, 3.0, 14.1}};
+  result.subset_temperatures = {{"band", "90 to 110 GHz", 4, 60.0, 5.0}};
+  result.models = {{"two components", 4, 120.0, 3.0, 5.0, 2.0, 0.4, true, "the lines do not hold it"}};
+  result.model_choice = "nothing asks for more";
   for (LineResult& line : result.lines) {
     line.calibration_error = 0.1;
     line.calibration_group = "band 3";
     line.blend = "a";
     line.note = "wing";
+    line.calibration_factor = 1.07;
+    line.critical_density_cm3 = 3e5;
   }
   return result;
 }
@@ -37,10 +49,10 @@ TEST(JsonLine, ReadsEveryKeyBack) {
 }
 
 TEST(JsonLine, ReadsEveryStatusBack) {
-  for (int i = 0; i <= static_cast<int>(Status::not_converged); ++i) {
-    Result result = full_result();
-    result.status = static_cast<Status>(i);
-    EXPECT_EQ(parse_result_json(result_json(result)).status, result.status) << name_of(result.status);
+  for (const Status status : kEveryStatus) {
+    Result result = invented_result();
+    result.status = status;
+    EXPECT_EQ(parse_result_json(result_json_line(result)).status, status) << name_of(status);
   }
 }
 

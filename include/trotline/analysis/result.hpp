@@ -29,8 +29,17 @@ enum class Status {
   only_limits,  ///< no line is detected
   no_lines,     ///< no line is left to fit: the options or the intensities leave none
   unbounded,    ///< a temperature, but outside the range for which the species has a Q(T)
+  degenerate,   ///< the lines do not hold some combination of the parameters; ranges are what they do set
+  several,      ///< several answers describe the lines alike, see Result::alternatives
+  at_bound,     ///< the best value of a parameter is the edge of its range
+  no_solution,  ///< no temperature and column density agree with the opacity corrections that they imply
   not_converged
 };
+
+/// Every status, for those who go through them.
+inline constexpr Status kEveryStatus[] = {
+    Status::done,       Status::one_line, Status::not_thermal, Status::only_limits, Status::no_lines,   Status::unbounded,
+    Status::degenerate, Status::several,  Status::at_bound,    Status::no_solution, Status::not_converged};
 
 [[nodiscard]] const char* name_of(Status status);
 
@@ -48,12 +57,14 @@ struct LineResult {
   std::string blend;  ///< empty where the line stands alone
   double ln_nu_gu = kNotKnown;
   double ln_nu_gu_error = kNotKnown;  ///< noise and calibration together
-  double optical_depth = kNotKnown;   ///< at line centre, where a width is known
+  double optical_depth = kNotKnown;   ///< at line centre, where a width is known; of two components the larger
   double filling = 1.0;
   double beam_fwhm_arcsec = kNotKnown;
   double fwhm_km_s = kNotKnown;
   double model_intensity_k_km_s = kNotKnown;
   double residual_sigma = kNotKnown;  ///< (observed - model) / error; for a limit (limit - model) / error
+  double calibration_factor = 1.0;    ///< the shared factor that the fit puts on the model of this line
+  double critical_density_cm3 = kNotKnown;  ///< where collision rates are given
   bool used = true;
   std::string why_unused;
   std::size_t table_line = 0;  ///< line of the input table
@@ -85,6 +96,73 @@ struct ColumnAtTemperature {
   double column_density_cm2 = kNotKnown;
   double error_cm2 = kNotKnown;
   bool upper_limit = false;  ///< N is below column_density_cm2, not equal to it
+};
+
+/// One part of an answer that has several: a component, or a spin isomer.
+struct Component {
+  std::string name;  ///< "component 1", "ortho" ...
+  Estimate temperature_k;
+  Estimate column_density_cm2;
+  Estimate log10_column_density_cm2;
+  double source_size_arcsec = kNotKnown;  ///< NaN: fills every beam
+};
+
+/// A free parameter as the fit has it, for those who propagate errors further.
+struct FittedParameter {
+  std::string name;  ///< "ln_column_density_cm2", "ln_temperature_k", "ln_source_size_arcsec", "background_k"
+  double value = kNotKnown;
+  double error = kNotKnown;
+};
+
+/// Another answer that describes the lines as well.
+struct Alternative {
+  double temperature_k = kNotKnown;
+  double log10_column_density_cm2 = kNotKnown;
+  double source_size_arcsec = kNotKnown;
+  double delta_chi2 = kNotKnown;  ///< -2 ln L above that of the best
+};
+
+/// What leaving one line out does to the answer.
+struct LeftOut {
+  std::string transition;
+  double standardised_residual = kNotKnown;  ///< of the line against the fit with it, over its expected scatter
+  double temperature_k = kNotKnown;
+  double temperature_error_k = kNotKnown;
+  double log10_column_density_cm2 = kNotKnown;
+};
+
+/// The temperature of a part of the lines by itself.
+struct SubsetTemperature {
+  std::string division;  ///< "spin isomer", "K-ladder", "band", "beam"
+  std::string subset;
+  int lines = 0;
+  double temperature_k = kNotKnown;
+  double temperature_error_k = kNotKnown;
+};
+
+/// A model of the lines next to others.
+struct ModelEntry {
+  std::string name;
+  int free_count = 0;
+  double minus_2_ln_likelihood = kNotKnown;
+  double delta_aicc = kNotKnown;  ///< above the best of the models that are listed
+  double delta_bic = kNotKnown;
+  double likelihood_ratio = kNotKnown;  ///< against the model of one component, isomers together, with opacity
+  double p_value = kNotKnown;           ///< of such a ratio, if the smaller of the two holds
+  bool on_boundary = false;             ///< the smaller lies at the edge of the larger: p is no exact number
+  std::string note;                     ///< e.g. why the model could not be fitted
+};
+
+/// A curve of the diagram where the model is no single straight line.
+struct DiagramCurvePoint {
+  double energy_k = kNotKnown;
+  double ln_nu_gu = kNotKnown;
+  double low68 = kNotKnown;
+  double high68 = kNotKnown;
+};
+struct DiagramCurve {
+  std::string name;
+  std::vector<DiagramCurvePoint> points;
 };
 
 struct Provenance {
@@ -122,10 +200,20 @@ struct Result {
   /// every line", "optically thin lines".
   std::vector<std::string> assumptions;
   DiagramLine diagram_line;
+  std::vector<DiagramCurve> diagram_curves;  ///< instead of diagram_line: two components, isomers apart
+  Estimate source_size_fit_arcsec;           ///< where the size is fitted
+  std::vector<Component> components;         ///< where there are more than one
+  std::vector<FittedParameter> parameters;
+  std::vector<std::vector<double>> parameter_covariance;  ///< rows and columns as parameters; NaN where not known
+  std::vector<Alternative> alternatives;
   std::vector<LineResult> lines;
   std::vector<ColumnAtTemperature> columns_at_temperatures;  ///< for Status::one_line
   std::vector<Check> checks;
   std::string verdict;
+  std::vector<LeftOut> leave_one_out;
+  std::vector<SubsetTemperature> subset_temperatures;
+  std::vector<ModelEntry> models;  ///< where models are compared
+  std::string model_choice;        ///< what the comparison says, in one or two sentences
   std::vector<std::string> warnings;
   Provenance provenance;
 };

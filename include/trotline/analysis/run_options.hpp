@@ -12,9 +12,29 @@
 
 namespace trotline {
 
+/// What is known beforehand of a positive quantity: a value and its error, taken as normal in its logarithm.
+struct PriorKnowledge {
+  double value;
+  double sigma;
+};
+
 /// Everything that a person may set about the analysis of one source and species. SI inside.
 struct RunOptions {
-  std::string method = "line";
+  std::string method = "line";          ///< line, opacity-line, likelihood, robust
+  std::string opacity = "automatic";    ///< automatic, curve-of-growth, line-centre, thin; not for `line`
+  std::string intervals = "profile";    ///< profile, curvature
+  int components = 1;
+  bool isomers_apart = false;
+  bool compare_models = false;
+  std::optional<double> column_density_per_cm2;  ///< N is given, only T is fitted
+  std::optional<QuantityRange> temperature_range_k;
+  std::optional<PriorKnowledge> temperature_prior_k;
+  std::optional<QuantityRange> source_size_range_rad;
+  std::optional<PriorKnowledge> source_size_prior_rad;
+  bool source_size_free = false;  ///< fitted; source_size_rad is then empty
+  bool background_free = false;
+  std::string collisions;  ///< path of a file of collision rates; empty: none
+  std::optional<double> density_per_cm3;  ///< of the collision partner
   double background_k = constants::kCosmicBackgroundK;
   std::optional<double> source_size_rad;  ///< FWHM or diameter; without one the source fills every beam
   SourceShape source_shape = SourceShape::gaussian;

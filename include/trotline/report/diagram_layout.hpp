@@ -67,7 +67,7 @@ struct DiagramLayout {
   Axis ln_nu_gu;
   Axis residual;
   std::vector<DiagramPoint> points;
-  std::vector<DiagramSample> fit;  ///< empty where there is no line to draw
+  std::vector<DiagramSample> fit;  ///< empty where there is no line to draw; a NaN energy ends a curve
   std::vector<DiagramLabel> labels;
   std::size_t labels_left_out = 0;  ///< for want of room
   std::vector<PageText> texts;
