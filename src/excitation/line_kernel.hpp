@@ -10,7 +10,7 @@
 
 namespace trotline::internal {
 
-inline constexpr Eigen::Index kVectorLines = 8;
+inline constexpr Eigen::Index kVectorLines = 4;
 
 /// Constants of the lines, one array for each.
 struct LineArrays {

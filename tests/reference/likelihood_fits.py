@@ -138,19 +138,24 @@ def simulate(rng, kind):
     return table, truth
 
 
-rng = np.random.default_rng(20260510)
-tables = []
-while len(tables) < 200:
-    kind = ("thin", "thick", "background", "dilution", "limits")[len(tables) % 5]
-    table, truth = simulate(rng, kind)
-    best, covariance = fit(table, truth)
-    # a temperature that the data do not hold (3 sigma in ln T above 1) is no test of a best fit
-    if not np.all(np.isfinite(covariance)) or covariance[1, 1] > 0.1 or abs(best[1] - truth[1]) > 1.5:
-        continue
-    table.update(ln_column=float(best[0]), ln_temperature=float(best[1]), covariance=covariance.tolist(),
-                 cost=float(cost(table, best)))
-    tables.append(table)
+def main():
+    rng = np.random.default_rng(20260510)
+    tables = []
+    while len(tables) < 200:
+        kind = ("thin", "thick", "background", "dilution", "limits")[len(tables) % 5]
+        table, truth = simulate(rng, kind)
+        best, covariance = fit(table, truth)
+        # a temperature that the data do not hold (3 sigma in ln T above 1) is no test of a best fit
+        if not np.all(np.isfinite(covariance)) or covariance[1, 1] > 0.1 or abs(best[1] - truth[1]) > 1.5:
+            continue
+        table.update(ln_column=float(best[0]), ln_temperature=float(best[1]), covariance=covariance.tolist(),
+                     cost=float(cost(table, best)))
+        tables.append(table)
 
-out = dict(source=f"scipy {scipy.__version__} least_squares and minimize, numpy {np.__version__}", tables=tables)
-path = pathlib.Path(__file__).with_suffix(".json")
-path.write_text(json.dumps(out, separators=(",", ":")) + "\n")
+    out = dict(source=f"scipy {scipy.__version__} least_squares and minimize, numpy {np.__version__}", tables=tables)
+    path = pathlib.Path(__file__).with_suffix(".json")
+    path.write_text(json.dumps(out, separators=(",", ":")) + "\n")
+
+
+if __name__ == "__main__":
+    main()
