@@ -61,7 +61,19 @@ inline double intensity(const Species& species, const std::vector<std::size_t>& 
                              ? std::pow(layer.source_arcsec, 2) /
                                    (std::pow(layer.source_arcsec, 2) + beam_arcsec * beam_arcsec)
                              : 1.0;
-  const Transition& first = species.transitions[members.front()];
+  struct Member {
+    double depth;
+    double offset_km_s;
+    double source_k;
+  };
+  std::vector<Member> parts;
+  const double reference_hz = species.transitions[members.front()].frequency_hz;
+  for (const std::size_t m : members) {
+    const Transition& t = species.transitions[m];
+    const double photon_k = constants::kKelvinPerHz * t.frequency_hz;
+    parts.push_back({depth(species, t, layer), constants::kLightMPerS / 1e3 * (1.0 - t.frequency_hz / reference_hz),
+                     planck(photon_k, layer.temperature_k) - planck(photon_k, layer.background_k)});
+  }
   constexpr int kSteps = 6000;
   constexpr double kReach = 30.0;  // km/s
   double sum = 0.0;
@@ -69,14 +81,11 @@ inline double intensity(const Species& species, const std::vector<std::size_t>& 
     const double v = -kReach + 2.0 * kReach * i / kSteps;
     double tau = 0.0;
     double source = 0.0;
-    for (const std::size_t m : members) {
-      const Transition& t = species.transitions[m];
-      const double photon_k = constants::kKelvinPerHz * t.frequency_hz;
-      const double offset = constants::kLightMPerS / 1e3 * (1.0 - t.frequency_hz / first.frequency_hz);
+    for (const Member& part : parts) {
       const double here =
-          depth(species, t, layer) * std::exp(-4.0 * std::numbers::ln2 * std::pow((v - offset) / kFwhmKmS, 2));
+          part.depth * std::exp(-4.0 * std::numbers::ln2 * std::pow((v - part.offset_km_s) / kFwhmKmS, 2));
       tau += here;
-      source += here * (planck(photon_k, layer.temperature_k) - planck(photon_k, layer.background_k));
+      source += here * part.source_k;
     }
     if (tau > 0.0) sum += -std::expm1(-tau) / tau * source;
   }
