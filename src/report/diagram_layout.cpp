@@ -169,7 +169,7 @@ void sample_fit(DiagramLayout& layout, const DiagramLine& line) {
     const double energy_k = layout.energy.low + (layout.energy.high - layout.energy.low) * i / kSamples;
     const double center = fitted_value(line, energy_k);
     const double half = band_half_width(line, energy_k);
-    if (cut(center - half) == cut(center + half) && center != cut(center)) continue;  // outside of the panel
+    if (center != cut(center)) continue;  // outside of the panel, along whose edge no line may run
     layout.fit.push_back({energy_k, cut(center), cut(center - half), cut(center + half)});
   }
 }

@@ -1,8 +1,10 @@
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 
 #include <trotline/report/diagram_text.hpp>
+#include <trotline/report/display_text.hpp>
 #include <trotline/report/rounding.hpp>
 
 namespace trotline {
@@ -55,11 +57,34 @@ DiagramAnswer for_one_line(const Result& result) {
   return said;
 }
 
+/// Two components: T and N of each. Spin isomers: the one T, N of each.
+DiagramAnswer for_components(const Result& result) {
+  DiagramAnswer said{{}, goodness(result)};
+  const Component& first = result.components.front();
+  const bool one_temperature = std::all_of(result.components.begin(), result.components.end(), [&](const auto& part) {
+    return part.temperature_k.value == first.temperature_k.value;
+  });
+  if (one_temperature) said.answer.push_back(temperature_text(result));
+  for (const Component& part : result.components) {
+    const std::string column =
+        "N = " + value_with_error(part.column_density_cm2.value, part.column_density_cm2.error) + " cm⁻²";
+    if (one_temperature) {
+      said.detail.insert(said.detail.end() - static_cast<std::ptrdiff_t>(goodness(result).size()),
+                         display_text(part.name) + ": " + column);
+    } else {
+      said.answer.push_back("T = " + value_with_error(part.temperature_k.value, part.temperature_k.error) + " K");
+      said.answer.push_back(column);
+    }
+  }
+  return said;
+}
+
 }  // namespace
 
 DiagramAnswer diagram_answer(const Result& result) {
   switch (result.status) {
     case Status::done:
+      if (!result.components.empty()) return for_components(result);
       return {{temperature_text(result), column_text(result)}, goodness(result)};
     case Status::unbounded:
       return {{temperature_text(result)}, {"outside the range of Q(T)"}};

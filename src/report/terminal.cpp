@@ -469,8 +469,8 @@ void add_models(Page& page, const Result& result) {
     bic.cells.push_back(fixed_decimals(model.delta_bic, 1, page.glyphs()));
     const bool compared = std::isfinite(model.likelihood_ratio);
     ratio.cells.push_back(compared ? fixed_decimals(model.likelihood_ratio, 1, page.glyphs()) : "");
-    p.cells.push_back(!compared ? "" : (model.on_boundary ? "(" : "") + significant(model.p_value, 2, page.glyphs()) +
-                                           (model.on_boundary ? ")" : ""));
+    const std::string chance = model.p_value > 0.0 ? significant(model.p_value, 2, page.glyphs()) : "<1e-300";
+    p.cells.push_back(!compared ? "" : model.on_boundary ? "(" + chance + ")" : chance);
     boundary = boundary || (compared && model.on_boundary);
   }
   for (const std::string& line :
