@@ -6,6 +6,7 @@
 #include <cmath>
 #include <functional>
 #include <numeric>
+#include <set>
 
 namespace trotline {
 namespace {
@@ -25,15 +26,13 @@ using NameOf = std::function<std::string(const PreparedLine&)>;
 LineDivision by_name(const std::string& name, const std::vector<PreparedLine>& lines,
                      const std::vector<std::size_t>& rows, const NameOf& name_of_group) {
   LineDivision division{name, {}, {}};
+  std::set<std::string> names;
+  for (const std::size_t row : rows) names.insert(name_of_group(lines[row]));
+  names.erase("");
+  division.groups.assign(names.begin(), names.end());
   for (const std::size_t row : rows) {
-    const std::string group = name_of_group(lines[row]);
-    if (group.empty()) {
-      division.group.push_back(-1);
-      continue;
-    }
-    auto found = std::find(division.groups.begin(), division.groups.end(), group);
-    if (found == division.groups.end()) found = division.groups.insert(found, group);
-    division.group.push_back(static_cast<int>(found - division.groups.begin()));
+    const auto found = names.find(name_of_group(lines[row]));
+    division.group.push_back(found == names.end() ? -1 : static_cast<int>(std::distance(names.begin(), found)));
   }
   return division;
 }

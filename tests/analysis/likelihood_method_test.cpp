@@ -1,4 +1,5 @@
 #include <gmock/gmock.h>
+#include <fmt/format.h>
 #include <gtest/gtest.h>
 
 #include <cmath>
@@ -352,6 +353,44 @@ TEST(OpacityLineMethod, ReturnsTheTruthOrSaysThatThereIsNoSolution) {
     EXPECT_NEAR(result.column_density_cm2.value / n, 1.0, 1e-4) << tau0;
     EXPECT_NEAR(result.chi2, 0.0, 1e-4);
     for (const LineResult& line : result.lines) EXPECT_NEAR(line.residual_sigma, 0.0, 1e-2);
+  }
+}
+
+// The hard case: CH3CN 12-11, K = 0 to 6, 70 K, noise-free; the likelihood returns T and N within 0.1 % at any
+// opacity, the corrected line too or says that it found no solution.
+TEST(MethylCyanideTable, ComesBackFromThinToOpaque) {
+  const Species species = SpeciesLibrary(SpeciesLibrary::standard_folders()).find("CH3CN");
+  for (const double tau0 : {0.1, 1.0, 3.0, 5.0, 10.0, 30.0}) {
+    IntensityTable table;
+    table.file = "lines.csv";
+    double most = 0.0;
+    std::vector<std::size_t> members;
+    for (int k = 0; k <= 6; ++k) {
+      members.push_back(transitions_labelled(species, fmt::format("12({0})-11({0})", k)).at(0));
+      most = std::max(most, depth(species, species.transitions[members.back()], {70.0, 1e13}));
+    }
+    const double n = 1e13 * tau0 / most;
+    for (const std::size_t member : members) {
+      IntensityRow row;
+      row.line_number = table.rows.size() + 2;
+      row.transition = transition_label(species, species.transitions[member]);
+      row.fwhm_km_s = kFwhmKmS;
+      row.intensity = intensity(species, {member}, {70.0, n}, 10.0);
+      row.intensity_sigma = 0.05 * row.intensity;
+      table.rows.push_back(row);
+    }
+    const Result fit = analyse(species, table, by("likelihood"));
+    ASSERT_EQ(fit.status, Status::done) << tau0 << fit.message;
+    EXPECT_NEAR(fit.temperature_k.value, 70.0, 0.07) << tau0;
+    EXPECT_NEAR(fit.column_density_cm2.value / n, 1.0, 1e-3) << tau0;
+    const Result line = analyse(species, table, by("opacity-line"));
+    if (line.status == Status::done) {
+      EXPECT_NEAR(line.chi2, 0.0, 1e-3) << tau0;
+      EXPECT_NEAR(line.temperature_k.value, 70.0, 0.07) << tau0;
+    } else {
+      EXPECT_EQ(line.status, Status::no_solution) << tau0;
+      EXPECT_TRUE(std::isnan(line.temperature_k.value));
+    }
   }
 }
 
