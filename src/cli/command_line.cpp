@@ -1,8 +1,9 @@
 #include "command_line.hpp"
 
+#include <CLI/CLI.hpp>
 #include <fmt/format.h>
 
-#include <CLI/CLI.hpp>
+#include <map>
 
 #include <trotline/base/text.hpp>
 
@@ -23,7 +24,8 @@ std::string name_only(const std::string& argument) {
   std::vector<std::string> names = syntax.values;
   names.insert(names.end(), syntax.flags.begin(), syntax.flags.end());
   const auto nearest = nearest_name(name_only(argument), names);
-  throw UsageError(fmt::format("there is no option '{}'{}; 'trotline {} --help' lists them", printable(argument),
+  throw UsageError(fmt::format("there is no option '{}'{}; 'trotline {} --help' lists them",
+                               printable(argument),
                                nearest ? fmt::format("; did you mean '--{}'?", *nearest) : "", syntax.verb));
 }
 
@@ -61,10 +63,30 @@ ParsedCommand parse_command(const CommandSyntax& syntax, const std::vector<std::
   for (const std::string& name : syntax.values) {
     if (options[name]->count() > 1) throw UsageError(fmt::format("option '--{}' is given twice", name));
     if (options[name]->count() == 0) continue;
-    if (trimmed(given[name]).empty()) throw UsageError(fmt::format("option '--{}' is given an empty value", name));
+    if (trimmed(given[name]).empty())
+      throw UsageError(fmt::format("option '--{}' is given an empty value", name));
     command.values.emplace_back(name, given[name]);
   }
   return command;
+}
+
+std::vector<FigureFormat> figure_formats(const std::string& text) {
+  if (text == "none") return {};
+  std::vector<FigureFormat> formats;
+  for (std::size_t start = 0; start <= text.size();) {
+    const std::size_t comma = std::min(text.find(',', start), text.size());
+    const std::string word = lower_case(trimmed(std::string_view(text).substr(start, comma - start)));
+    const std::map<std::string, FigureFormat> known = {
+        {"svg", FigureFormat::svg}, {"pdf", FigureFormat::pdf}, {"png", FigureFormat::png}};
+    if (!known.contains(word)) {
+      throw UsageError(
+          fmt::format("--figures: there is no figure format '{}'; expected a list of svg, pdf, png, or none",
+                      printable(word)));
+    }
+    formats.push_back(known.at(word));
+    start = comma + 1;
+  }
+  return formats;
 }
 
 }  // namespace trotline

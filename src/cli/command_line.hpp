@@ -6,6 +6,8 @@
 #include <utility>
 #include <vector>
 
+#include <trotline/report/figure.hpp>
+
 namespace trotline {
 
 /// The command line is wrong.
@@ -16,11 +18,11 @@ class UsageError : public std::runtime_error {
 
 /// What a verb understands.
 struct CommandSyntax {
-  std::string verb;                  ///< for messages
-  std::string positional;            ///< name of the one positional argument; empty: none
+  std::string verb;        ///< for messages
+  std::string positional;  ///< name of the one positional argument; empty: none
   bool positional_required = false;
-  std::vector<std::string> values;   ///< options that take a value, without "--"
-  std::vector<std::string> flags;    ///< options that take none
+  std::vector<std::string> values;  ///< options that take a value, without "--"
+  std::vector<std::string> flags;   ///< options that take none
 };
 
 /// A command line taken apart.
@@ -35,6 +37,10 @@ struct ParsedCommand {
 
 /// @throws UsageError  an unknown option (with the nearest one), a missing value or argument, an option given
 ///         twice
-[[nodiscard]] ParsedCommand parse_command(const CommandSyntax& syntax, const std::vector<std::string>& arguments);
+[[nodiscard]] ParsedCommand parse_command(const CommandSyntax& syntax,
+                                          const std::vector<std::string>& arguments);
+
+/// Formats of figures from "svg,pdf" or "none". @throws UsageError naming the one that is not known
+[[nodiscard]] std::vector<FigureFormat> figure_formats(const std::string& text);
 
 }  // namespace trotline

@@ -1,7 +1,6 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <map>
 
 #include <trotline/analysis/analyse.hpp>
 #include <trotline/base/errors.hpp>
@@ -59,24 +58,6 @@ RunDescription description_of(const ParsedCommand& command) {
   return run;
 }
 
-std::vector<FigureFormat> figure_formats(const std::string& text) {
-  if (text == "none") return {};
-  std::vector<FigureFormat> formats;
-  for (std::size_t start = 0; start <= text.size();) {
-    const std::size_t comma = std::min(text.find(',', start), text.size());
-    const std::string word = lower_case(trimmed(std::string_view(text).substr(start, comma - start)));
-    const std::map<std::string, FigureFormat> known = {
-        {"svg", FigureFormat::svg}, {"pdf", FigureFormat::pdf}, {"png", FigureFormat::png}};
-    if (!known.contains(word)) {
-      throw UsageError(fmt::format("--figures: there is no figure format '{}'; expected a list of svg, pdf, png, or none",
-                                   printable(word)));
-    }
-    formats.push_back(known.at(word));
-    start = comma + 1;
-  }
-  return formats;
-}
-
 OutputOptions output_options(const ParsedCommand& command) {
   OutputOptions options;
   for (const auto& [name, value] : command.values) {
@@ -92,7 +73,8 @@ void write_folder(const Result& result, const std::string& folder, const OutputO
     write_outputs(result, output, options);
   } catch (const SystemError& error) {
     if (options.formats.empty()) throw;
-    throw SystemError(fmt::format("{}; with '--figures none' everything but the figures is written", error.what()));
+    throw SystemError(
+        fmt::format("{}; with '--figures none' everything but the figures is written", error.what()));
   }
   const auto names = output.commit();
   console.err << fmt::format("trotline: wrote {} to {}\n", listed(names, names.size()), folder);
@@ -110,7 +92,8 @@ ExitCode run_fit(const std::vector<std::string>& arguments, const Console& conso
   if (command.flags.at("json")) {
     console.out << result_json(result);
   } else {
-    console.out << terminal_report(result, {static_cast<std::size_t>(console.width), console.colour, console.unicode});
+    console.out << terminal_report(
+        result, {static_cast<std::size_t>(console.width), console.colour, console.unicode});
   }
   return result.status == Status::done ? ExitCode::done : ExitCode::no_answer;
 }

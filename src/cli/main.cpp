@@ -31,7 +31,8 @@ int main(int argc, char** argv) {
   const bool terminal = isatty(STDOUT_FILENO) != 0;
   trotline::Console console{std::cout, std::cerr};
   winsize size{};
-  if (terminal && ioctl(STDOUT_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0) console.width = size.ws_col;
+  if (terminal && ioctl(STDOUT_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0)
+    console.width = size.ws_col;
   console.colour = terminal && !is_set("NO_COLOR");
   console.unicode = !terminal || locale_is_utf8();
   console.owns_process = true;

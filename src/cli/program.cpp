@@ -1,5 +1,3 @@
-#include <trotline/cli/program.hpp>
-
 #include <fmt/format.h>
 
 #include <exception>
@@ -9,6 +7,7 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
 #include <trotline/base/version.hpp>
+#include <trotline/cli/program.hpp>
 
 #include "command_line.hpp"
 #include "verbs.hpp"
@@ -54,8 +53,8 @@ ExitCode dispatch(const std::vector<std::string>& arguments, const Console& cons
     return verb.run(rest, console);
   }
   const std::string guess = did_you_mean(first, names);
-  throw UsageError(fmt::format("there is no verb '{}'; the verbs are {}{}; see 'trotline --help'", printable(first),
-                               listed(names), guess.empty() ? "" : "; " + guess));
+  throw UsageError(fmt::format("there is no verb '{}'; the verbs are {}{}; see 'trotline --help'",
+                               printable(first), listed(names), guess.empty() ? "" : "; " + guess));
 }
 
 ExitCode say(const Console& console, const std::string& message, ExitCode code) {
@@ -80,7 +79,8 @@ ExitCode run_program(const std::vector<std::string>& arguments, const Console& c
   } catch (const SystemError& error) {
     return say(console, error.what(), ExitCode::fault);
   } catch (const std::exception& error) {
-    return say(console, fmt::format("a fault of the program, please report it: {}", error.what()), ExitCode::fault);
+    return say(console, fmt::format("a fault of the program, please report it: {}", error.what()),
+               ExitCode::fault);
   }
 }
 
