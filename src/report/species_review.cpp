@@ -42,7 +42,7 @@ const char* opinion(Verdict verdict) {
 std::string paragraph(const SpeciesCheck& check) {
   constexpr std::size_t kIndent = 4;
   std::string result;
-  for (const std::string& line : wrapped(fmt::format("{}: {}", check.name, check.figure), kWidth - kIndent))
+  for (const std::string& line : wrapped(display_text(fmt::format("{}: {}", check.name, check.figure)), kWidth - kIndent))
     result += fmt::format("    {}\n", line);
   for (const std::string& line : wrapped(check.meaning, kWidth - 2 * kIndent)) {
     result += fmt::format("        {}\n", line);
@@ -89,7 +89,7 @@ std::string partition_lines(const PartitionComparison& partition) {
 }  // namespace
 
 std::string check_text(const Species& species, const std::vector<SpeciesCheck>& checks) {
-  std::string text = fmt::format("{}   {}\n{}\n", species.name, species.file, opinion(worst_of(checks)));
+  std::string text = fmt::format("{}   {}\n{}\n", species.name, display_text(species.file), opinion(worst_of(checks)));
   text += fmt::format("{} tests: {} wrong, {} doubtful, {} in order\n", checks.size(),
                       count(checks, Verdict::wrong), count(checks, Verdict::doubtful),
                       count(checks, Verdict::in_order));

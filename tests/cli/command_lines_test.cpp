@@ -44,7 +44,17 @@ std::vector<WrongLine> wrong_lines() {
       {{"species", "CO", "--lines", "80 GHz"}, usage, {"--lines", "80 GHz", "range"}},
       {{"species", "CO", "--partition", "warm"}, usage, {"--partition", "warm", "kelvin"}},
       {{"species", "CO", "--partition", "1e6"}, input, {"CO", "1e+06 K", "to"}},
-      {{"species", "--levels"}, usage, {"need the name"}},
+      {{"species", "--levels"}, usage, {"name of a species", "trotline species CO"}},
+      {{"species", "CO", "--at", "40"}, usage, {"--at", "no unit"}},
+      {{"species", "CO", "--at", "0 K"}, usage, {"--at", "not above 0 K"}},
+      {{"species", "CO", "--at", "1e6 K"}, input, {"CO", "1e+06 K", "to"}},
+      {{"species", "CO", "--column", "1e14 cm-2"}, usage, {"--column", "--at"}},
+      {{"species", "CO", "--stronger-than", "1 K km/s"}, usage, {"--stronger-than", "--at"}},
+      {{"species", "CO", "--at", "40 K", "--stronger-than", "1 K"}, usage, {"--stronger-than", "K km/s"}},
+      {{"species", "CO", "--check", "--compare", "CS"}, usage, {"--check", "--compare", "one at a time"}},
+      {{"species", "CO", "--check", "--at", "40 K"}, usage, {"--at", "--check"}},
+      {{"species", "CO", "--compare", "C0"}, input, {"C0"}},
+      {{"species", "CO", "--figures", "svg"}, usage, {"--figures", "--out"}},
       {{}, usage, {"verb"}},
   };
 }

@@ -57,6 +57,9 @@ TEST_F(ManPages, ExamplesRunAndPrintWhatTheyShow) {
   (void)folder_.file("lines.csv",
                      "transition,intensity [K km/s],intensity_error [K km/s],beam_fwhm [arcsec]\n"
                      "1-0,4.21,0.08,28\n2-1,8.93,0.25,14\n3-2,7.02,0.41,9\n");
+  for (const char* name : {"my_molecule.yaml", "my_h2co.yaml"}) {
+    std::filesystem::copy_file(std::string(TROTLINE_SOURCE_DIR) + "/configs/species/H2CO.yaml", folder_.path() / name);
+  }
   const auto before = std::filesystem::current_path();
   std::filesystem::current_path(folder_.path());
   int shown = 0;
