@@ -1,5 +1,3 @@
-#include <trotline/base/files.hpp>
-
 #include <fcntl.h>
 #include <fmt/format.h>
 #include <sys/stat.h>
@@ -13,12 +11,13 @@
 #include <cstring>
 #include <fstream>
 #include <iostream>
+#include <map>
 #include <mutex>
-#include <set>
 #include <sstream>
 #include <system_error>
 
 #include <trotline/base/errors.hpp>
+#include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
 
 namespace trotline {
@@ -76,7 +75,11 @@ class TemporaryFile {
   }
 
  private:
+  /// It can only be read by setting it, and it is the process's: one thread at a time, or two could put back what
+  /// the other has set.
   static mode_t current_umask() {
+    static std::mutex one_at_a_time;
+    const std::scoped_lock lock(one_at_a_time);
     const mode_t mask = ::umask(022);
     ::umask(mask);
     return mask;
@@ -90,13 +93,14 @@ void make_folder(const fs::path& folder) {
   if (folder.empty()) return;
   std::error_code error;
   fs::create_directories(folder, error);
-  if (error) throw SystemError(fmt::format("{}: cannot make the folder: {}", folder.string(), error.message()));
+  if (error)
+    throw SystemError(fmt::format("{}: cannot make the folder: {}", folder.string(), error.message()));
 }
 
 /// The hidden folders of this process, for abandon_output_folders().
 struct StagingRegistry {
   std::mutex mutex;
-  std::set<fs::path> folders;
+  std::map<fs::path, bool> folders;  ///< true: the folder above was made for it
 };
 
 StagingRegistry& registry() {
@@ -114,7 +118,8 @@ void remove_stale_staging(const fs::path& target) {
     if (!name.starts_with(kStagingPrefix)) continue;
     const std::string digits = name.substr(kStagingPrefix.size(), name.rfind('-') - kStagingPrefix.size());
     const auto process = parse_whole_number(digits);
-    const bool gone = process && *process > 0 && ::kill(static_cast<pid_t>(*process), 0) != 0 && errno == ESRCH;
+    const bool gone =
+        process && *process > 0 && ::kill(static_cast<pid_t>(*process), 0) != 0 && errno == ESRCH;
     if (gone) fs::remove_all(entry.path(), ignored);
   }
 }
@@ -132,6 +137,9 @@ std::string read_file(const std::string& path, std::size_t most_bytes) {
   if (path == "-") return read_stream(std::cin, "standard input", most_bytes);
   std::error_code error;
   const auto status = fs::status(path, error);
+  if (error && error != std::errc::no_such_file_or_directory) {
+    throw InputError(Place{path}, {"cannot be opened for reading: " + error.message(), "a readable file"});
+  }
   if (!fs::exists(status)) throw InputError(Place{path}, {"there is no such file", "a readable file"});
   if (fs::is_directory(status)) throw InputError(Place{path}, {"is a folder", "a file"});
   std::ifstream stream(path, std::ios::binary);
@@ -141,14 +149,18 @@ std::string read_file(const std::string& path, std::size_t most_bytes) {
 
 void write_file(const fs::path& path, std::string_view bytes) {
   make_folder(path.parent_path());
-  if (fs::is_directory(path)) throw SystemError(fmt::format("{}: is a folder, cannot write", path.string()));
+  std::error_code ignored;
+  if (fs::is_directory(path, ignored)) {
+    throw SystemError(fmt::format("{}: is a folder, cannot write", path.string()));
+  }
   TemporaryFile(path).store(bytes, path);
 }
 
 OutputFolder::OutputFolder(fs::path target) : target_(std::move(target)) {
   std::error_code error;
   if (fs::exists(target_, error) && !fs::is_directory(target_, error)) {
-    throw SystemError(fmt::format("{}: exists and is no folder; name another output folder", target_.string()));
+    throw SystemError(
+        fmt::format("{}: exists and is no folder; name another output folder", target_.string()));
   }
   made_target_ = !fs::exists(target_, error);
   make_folder(target_);
@@ -161,7 +173,7 @@ OutputFolder::OutputFolder(fs::path target) : target_(std::move(target)) {
   }
   staging_ = name;
   const std::scoped_lock lock(registry().mutex);
-  registry().folders.insert(staging_);
+  registry().folders[staging_] = made_target_;
 }
 
 OutputFolder::~OutputFolder() {
@@ -176,17 +188,26 @@ void OutputFolder::write(const std::string& name, std::string_view bytes) const 
   write_file(staging_ / name, bytes);
 }
 
-std::vector<std::string> OutputFolder::commit() {
+std::vector<std::string> OutputFolder::commit(const std::vector<std::string>& family) {
+  std::error_code error;
   std::vector<std::string> names;
-  for (const auto& entry : fs::directory_iterator(staging_)) names.push_back(entry.path().filename().string());
+  for (fs::directory_iterator entry(staging_, error), end; !error && entry != end; entry.increment(error)) {
+    names.push_back(entry->path().filename().string());
+  }
+  if (error) throw SystemError(fmt::format("{}: cannot be read: {}", staging_.string(), error.message()));
   std::sort(names.begin(), names.end());
   for (const std::string& name : names) {
-    if (fs::is_directory(target_ / name)) {
+    if (fs::is_directory(target_ / name, error)) {
       throw SystemError(fmt::format("{}: is a folder, cannot write", (target_ / name).string()));
     }
   }
+  const std::scoped_lock lock(registry().mutex);  // nobody abandons the set half-way
+  for (const std::string& old : family) {
+    if (!std::binary_search(names.begin(), names.end(), old)) fs::remove(target_ / old, error);
+  }
   for (const std::string& name : names) {
-    if (::rename((staging_ / name).c_str(), (target_ / name).c_str()) != 0) refuse(target_ / name, "write", errno);
+    if (::rename((staging_ / name).c_str(), (target_ / name).c_str()) != 0)
+      refuse(target_ / name, "write", errno);
   }
   committed_ = true;
   return names;
@@ -195,9 +216,9 @@ std::vector<std::string> OutputFolder::commit() {
 void abandon_output_folders() {
   const std::scoped_lock lock(registry().mutex);
   std::error_code ignored;
-  for (const fs::path& folder : registry().folders) {
+  for (const auto& [folder, made_above] : registry().folders) {
     fs::remove_all(folder, ignored);
-    fs::remove(folder.parent_path(), ignored);  // only where it is empty
+    if (made_above) fs::remove(folder.parent_path(), ignored);  // only where it is empty
   }
   registry().folders.clear();
 }
@@ -205,8 +226,8 @@ void abandon_output_folders() {
 std::string safe_file_name(std::string_view text) {
   constexpr std::size_t kLongest = 80;
   const auto is_plain = [](char c) {
-    return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '+' || c == '-' ||
-           c == '_' || c == '.';
+    return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '+' ||
+           c == '-' || c == '_' || c == '.';
   };
   std::string name;
   for (const char c : text) name += is_plain(c) ? c : '_';

@@ -76,7 +76,7 @@ void write_folder(const Result& result, const std::string& folder, const OutputO
     throw SystemError(
         fmt::format("{}; with '--figures none' everything but the figures is written", error.what()));
   }
-  const auto names = output.commit();
+  const auto names = output.commit(output_family());
   console.err << fmt::format("trotline: wrote {} to {}\n", listed(names, names.size()), folder);
 }
 

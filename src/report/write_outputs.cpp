@@ -16,4 +16,11 @@ void write_outputs(const Result& result, OutputFolder& folder, const OutputOptio
   write_diagram(result, folder.staging(), diagram);
 }
 
+const std::vector<std::string>& output_family() {
+  static const std::vector<std::string> kNames = {
+      "result.json", "lines.ecsv", "report.txt", "diagram.svg", "diagram.pdf", "diagram.png", "diagram.gp",
+      "diagram-points.tsv", "diagram-line.tsv", "diagram-labels.tsv", "diagram-text.tsv"};
+  return kNames;
+}
+
 }  // namespace trotline

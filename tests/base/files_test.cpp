@@ -90,6 +90,24 @@ TEST_F(Files, OutputFolderShowsNothingBeforeCommit) {
   EXPECT_THAT(names_in(folder_ / "new/out"), testing::ElementsAre("a.txt", "b.txt"));
 }
 
+/// Until 2026-12-01 a figure of an earlier run stayed beside the result of the next one.
+TEST_F(Files, OutputFolderRemovesWhatAnEarlierRunLeftOfItsFamily) {
+  write_file(folder_ / "out/figure.svg", "old");
+  write_file(folder_ / "out/theirs.txt", "keep me");
+  OutputFolder output(folder_ / "out");
+  output.write("result.json", "new");
+  output.commit({"figure.svg", "result.json"});
+  EXPECT_THAT(names_in(folder_ / "out"), testing::IsSupersetOf({"result.json", "theirs.txt"}));
+  EXPECT_FALSE(fs::exists(folder_ / "out/figure.svg"));
+}
+
+TEST_F(Files, AbandonedOutputFoldersLeaveAFolderThatWasThere) {
+  fs::create_directory(folder_ / "mine");
+  const OutputFolder output(folder_ / "mine");
+  abandon_output_folders();
+  EXPECT_TRUE(fs::exists(folder_ / "mine"));
+}
+
 TEST_F(Files, OutputFolderWithoutCommitLeavesNothing) {
   {
     OutputFolder output(folder_ / "out");

@@ -34,8 +34,10 @@ class OutputFolder {
   void write(const std::string& name, std::string_view bytes) const;
 
   /// Moves everything in staging to the target, over files of the same names.
+  /// @param family  names that belong to the same set of outputs: those that were not made this time are removed
+  ///         from the target, so that no figure of an earlier run stands beside this one's result
   /// @return the names of the files, sorted. @throws SystemError when a file cannot be moved
-  std::vector<std::string> commit();
+  std::vector<std::string> commit(const std::vector<std::string>& family = {});
 
  private:
   std::filesystem::path target_;

@@ -1,6 +1,7 @@
 #pragma once
 
 #include <cstddef>
+#include <string>
 #include <vector>
 
 #include <trotline/analysis/result.hpp>
@@ -20,5 +21,9 @@ struct OutputOptions {
 /// so a failure here leaves nothing behind. docs/outputs.md describes them.
 /// @throws SystemError when a file cannot be written or the figure not drawn
 void write_outputs(const Result& result, OutputFolder& folder, const OutputOptions& options = {});
+
+/// Every name that write_outputs() may write: to be given to OutputFolder::commit(), so that what an earlier run
+/// left does not stand beside this one's result.
+[[nodiscard]] const std::vector<std::string>& output_family();
 
 }  // namespace trotline
