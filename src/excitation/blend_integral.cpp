@@ -85,9 +85,13 @@ double integrate_blend(BlendMember* members, Eigen::Index count) {
     double low = first->offset_km_s - reach_km_s(*first);
     double high = first->offset_km_s + reach_km_s(*first);
     BlendMember* last = first + 1;
-    for (; last != end && last->offset_km_s - reach_km_s(*last) < high; ++last) {
-      low = std::min(low, last->offset_km_s - reach_km_s(*last));
-      high = std::max(high, last->offset_km_s + reach_km_s(*last));
+    // A wide member may reach back over narrow ones before it: all of them are looked at, not the next alone.
+    for (BlendMember* m = last; m != end; ++m) {
+      if (m->offset_km_s - reach_km_s(*m) >= high) continue;
+      for (; last <= m; ++last) {
+        low = std::min(low, last->offset_km_s - reach_km_s(*last));
+        high = std::max(high, last->offset_km_s + reach_km_s(*last));
+      }
     }
     intensity += integrate_cluster(first, last, low, high);
     first = last;

@@ -283,6 +283,24 @@ TEST(Blend, OfALineSplitInTwoIsTheLine) {
   }
 }
 
+/// The wide line reaches back over both narrow ones, which do not touch each other: until 2026-12-01 the first was
+/// closed before the last was looked at, and the overlap of opaque lines counted twice.
+TEST(Blend, SeesALineThatReachesBackOverTwoOthers) {
+  auto lines = blend_of(14.0, 1.0);
+  lines[0].fwhm_km_s = lines[1].fwhm_km_s = 2.0 * std::sqrt(std::numbers::ln2);
+  lines[1].constants.einstein_a_per_s *= 0.1;
+  lines.push_back(lines[0]);
+  lines[2].offset_km_s = 15.0;
+  lines[2].fwhm_km_s *= 10.0;
+  lines[2].constants.einstein_a_per_s *= 10.0;
+  const ForwardModel model(lines, partitions(1), {});
+  for (const double ln_column : {34.0, 36.0, 38.0}) {
+    const std::vector<double> state = {ln_column, std::log(20.0), std::log(10.0), 2.7255};
+    EXPECT_NEAR(datum(lines, ln_column, 20.0) / plain::intensities(model, state)[0], 1.0, 2.0 * kBlendError)
+        << ln_column;
+  }
+}
+
 TEST(Blend, SharesOfTheMembersAddUpToTheDatum) {
   const Case c = everything();
   ModelWorkspace workspace = c.model.workspace();
