@@ -6,6 +6,7 @@
 
 #include <trotline/base/errors.hpp>
 #include <trotline/excitation/thin_line.hpp>
+#include <trotline/report/display_text.hpp>
 #include <trotline/report/species_report.hpp>
 
 namespace trotline {
@@ -31,11 +32,13 @@ std::string summary_text(const Species& species) {
   }
   text += fmt::format("Q(T)       {}, for {:.4g} K to {:.4g} K\n", species.partition->description(),
                       species.partition->lowest_k(), species.partition->highest_k());
-  text += fmt::format("file       {}\n", species.file);
+  text += fmt::format("file       {}\n", display_text(species.file));
   for (const Citation& citation : species.citations) {
-    text += fmt::format("source     {}: {}\n", citation.what, citation.from);
+    text += fmt::format("source     {}: {}\n", citation.what, display_text(citation.from));
   }
-  for (const std::string& warning : species.warnings) text += fmt::format("note       {}\n", warning);
+  for (const std::string& warning : species.warnings) {
+    text += fmt::format("note       {}\n", display_text(warning));
+  }
   return text;
 }
 

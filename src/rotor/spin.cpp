@@ -57,6 +57,10 @@ Weights pair_weights(const SpinRequest& request) {
   int symmetric = 1;
   int antisymmetric = 0;
   bool changes_sign = request.state_is_antisymmetric;
+  constexpr std::size_t kMostPairs = 4;  // 55^4 spin functions of four pairs of spin 9/2 still are an int
+  if (request.spins.size() > kMostPairs) {
+    refuse(fmt::format("{} pairs of exchanged nuclei", request.spins.size()), "at most 4");
+  }
   for (const double spin : request.spins) {
     const int n = multiplicity(spin);
     const int same = n * (n + 1) / 2;

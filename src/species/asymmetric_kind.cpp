@@ -100,8 +100,9 @@ void read_asymmetric(const FileMap& file, Species& species) {
   const Validity validity = read_validity(file);
   RotorOptions options = options_for(validity, constants.c_hz);
   options.least_line_strength = kFaintestLineStrength;
-  take_model(made_from(file, "constants", [&] { return asymmetric_model(constants, dipole, *spin, options); }),
-             validity, std::move(modes), species);
+  take_model(
+      made_from(file, "constants", [&] { return asymmetric_model(constants, dipole, *spin, options); }),
+      validity, std::move(modes), species);
 }
 
 }  // namespace trotline

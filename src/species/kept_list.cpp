@@ -16,7 +16,6 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
-#include <trotline/base/version.hpp>
 
 namespace trotline {
 namespace {
@@ -194,6 +193,11 @@ std::optional<OpenedList> unpack(std::span<const char> bytes, const std::string&
   return list;
 }
 
+bool is_file(const std::string& path) {
+  std::error_code unreadable;
+  return fs::is_regular_file(path, unreadable);
+}
+
 fs::path cache_folder() {
   const auto set = [](const char* name) {
     const char* const value = std::getenv(name);
@@ -214,7 +218,7 @@ KeptList::KeptList(const std::string& list_path, const std::string& species_path
   if (folder.empty() || ::stat(list_path.c_str(), &status) != 0) return;
   std::error_code ignored;
   const std::string whole_path = fs::absolute(list_path, ignored).lexically_normal().string();
-  key_ = fmt::format("{}\n{}\n{} bytes, inode {} of {}, changed {}.{:09}\nspecies file {}\n", version(),
+  key_ = fmt::format("{}\n{}\n{} bytes, inode {} of {}, changed {}.{:09}\nspecies file {}\n", TROTLINE_LIST_CODE,
                      whole_path, status.st_size, status.st_ino, status.st_dev, status.st_ctim.tv_sec,
                      status.st_ctim.tv_nsec, species_fingerprint);
   const std::string both =
@@ -223,7 +227,7 @@ KeptList::KeptList(const std::string& list_path, const std::string& species_path
 }
 
 std::optional<OpenedList> KeptList::reopen() const {
-  if (file_.empty() || !fs::is_regular_file(file_)) return std::nullopt;
+  if (file_.empty() || !is_file(file_)) return std::nullopt;
   try {
     const ipc::file_mapping mapping(file_.c_str(), ipc::read_only);
     const ipc::mapped_region region(mapping, ipc::read_only);

@@ -23,7 +23,7 @@ inline constexpr std::size_t kLongListLines = 20000;
 /// The file that keeps one opened list, in $TROTLINE_CACHE, else $XDG_CACHE_HOME/trotline, else
 /// ~/.cache/trotline. It is this machine's own: it can be deleted at any time, and is made anew where
 /// something differs from when it was written: the species file, path, size, inode or time of change of the
-/// list, the program's version, the file's own bytes.
+/// list, the code that reads lists, the file's own bytes.
 class KeptList {
  public:
   /// @param species_fingerprint  of the species file's text

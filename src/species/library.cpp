@@ -1,13 +1,12 @@
-#include <trotline/species/library.hpp>
+#include <fmt/format.h>
 
 #include <algorithm>
 #include <cstdlib>
 #include <filesystem>
 
-#include <fmt/format.h>
-
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/species/library.hpp>
 #include <trotline/species/species_file.hpp>
 
 namespace trotline {

@@ -1,5 +1,3 @@
-#include <trotline/species/line_list.hpp>
-
 #include <fmt/format.h>
 
 #include <algorithm>
@@ -11,6 +9,7 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
 #include <trotline/physics/constants.hpp>
+#include <trotline/species/line_list.hpp>
 
 namespace trotline {
 namespace {

@@ -1,10 +1,9 @@
-#include <trotline/species/line_list_intensity.hpp>
-
 #include <cmath>
 #include <numbers>
 
 #include <trotline/base/errors.hpp>
 #include <trotline/physics/constants.hpp>
+#include <trotline/species/line_list_intensity.hpp>
 
 namespace trotline {
 namespace {

@@ -3,6 +3,7 @@
 #include <cmath>
 #include <filesystem>
 
+#include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
 #include <trotline/physics/constants.hpp>
@@ -111,15 +112,32 @@ double settle_and_get_q_300(const FileMap& file, const Statements& said, Species
   return said.a_from_intensity ? list_partition(file, stated, species) : 0.0;
 }
 
+/// A of one row; the largest that a dipole line can have is far below the bound.
+double einstein_a_of(const LineList& list, std::size_t index, double q_300k, const std::string& path) {
+  constexpr double kMostPerS = 1e12;
+  const LineListRow& row = list.rows[index];
+  const auto refuse = [&](const std::string& found) {
+    throw InputError({path, list.line_numbers[index]},
+                     {found, "an intensity and energies that make an A coefficient",
+                      "check 'intensity' in the species file: integrated_300k or log10_a"});
+  };
+  try {
+    const double a = q_300k > 0.0 ? einstein_a(row, q_300k) : std::pow(10.0, row.log10_intensity);
+    if (!(a >= 0.0 && a <= kMostPerS)) refuse(fmt::format("A would be {:.3g} 1/s", a));
+    return a;
+  } catch (const DomainError& error) {
+    refuse(error.what());
+  }
+  return 0.0;
+}
+
 /// A of every line, from whatever stands in the column of intensities.
-void take_einstein_a(double q_300k, const LineList& list, const ListedLevels& rebuilt, Species& species) {
-  const bool from_intensity = q_300k > 0.0;
+void take_einstein_a(double q_300k, const LineList& list, const ListedLevels& rebuilt,
+                     const std::string& path, Species& species) {
   species.transitions.reserve(rebuilt.transitions.size());
   for (const ListedTransition& listed : rebuilt.transitions) {
-    const LineListRow& row = list.rows[listed.row];
     species.transitions.push_back(listed.transition);
-    species.transitions.back().einstein_a_per_s =
-        from_intensity ? einstein_a(row, q_300k) : std::pow(10.0, row.log10_intensity);
+    species.transitions.back().einstein_a_per_s = einstein_a_of(list, listed.row, q_300k, path);
   }
 }
 
@@ -153,7 +171,7 @@ void read_line_list(const FileMap& file, Species& species) {
   species.warnings.insert(species.warnings.end(), rebuilt.warnings.begin(), rebuilt.warnings.end());
   const std::vector<std::string> warnings_of_list = species.warnings;
   const double q_300k = settle_and_get_q_300(file, said, species);
-  take_einstein_a(q_300k, list, rebuilt, species);
+  take_einstein_a(q_300k, list, rebuilt, block.path, species);
   kept.keep({species.levels, species.transitions, warnings_of_list, q_300k});
 }
 

@@ -4,6 +4,7 @@
 
 #include <trotline/rotor/linear.hpp>
 
+#include "rotor_constants.hpp"
 #include "species_kinds.hpp"
 
 namespace trotline {
@@ -57,8 +58,8 @@ void read_linear(const FileMap& file, Species& species) {
                                           validity.largest_j, turnover),
                               "a J up to which the constants hold"});
   }
-  take_model(linear_model(constants, dipole, *spin, options_for(validity)), validity, std::move(modes),
-             species);
+  const auto make = [&] { return linear_model(constants, dipole, *spin, options_for(validity)); };
+  take_model(made_from(file, "constants", make), validity, std::move(modes), species);
 }
 
 }  // namespace trotline

@@ -57,7 +57,7 @@ Points read_table_file(const std::string& path, double kelvin_per_unit) {
     fields >> q_text;
     const auto t = parse_number(t_text);
     const auto q = parse_number(q_text);
-    if (!t || !q) {
+    if (!t || !q || !std::isfinite(*t) || !std::isfinite(*q)) {
       throw InputError({path, number}, {fmt::format("the row is '{}'", printable(trimmed(line))),
                                         "a temperature and Q, separated by blanks"});
     }

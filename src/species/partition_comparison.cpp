@@ -1,8 +1,8 @@
-#include <trotline/species/partition_function.hpp>
-
 #include <algorithm>
 #include <cmath>
 #include <limits>
+
+#include <trotline/species/partition_function.hpp>
 
 namespace trotline {
 namespace {

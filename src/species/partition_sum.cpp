@@ -1,17 +1,16 @@
 // Q(T) as a sum over levels. Symbols: g degeneracy, E energy over k in kelvin, x = E/T.
 
-#include <trotline/species/partition_function.hpp>
-
 #include <Eigen/Dense>
-#include <algorithm>
 #include <boost/math/special_functions/gamma.hpp>
+#include <fmt/format.h>
+
+#include <algorithm>
 #include <cmath>
 #include <limits>
 #include <numeric>
 
-#include <fmt/format.h>
-
 #include <trotline/base/errors.hpp>
+#include <trotline/species/partition_function.hpp>
 
 #include "level_compression.hpp"
 

@@ -1,14 +1,13 @@
 // Q(T) from a table. Symbols: x = ln T, y = ln Q, s slope between two points.
 
-#include <trotline/species/partition_function.hpp>
-
-#include <algorithm>
 #include <boost/math/interpolators/cubic_hermite.hpp>
-#include <cmath>
-
 #include <fmt/format.h>
 
+#include <algorithm>
+#include <cmath>
+
 #include <trotline/base/errors.hpp>
+#include <trotline/species/partition_function.hpp>
 
 namespace trotline {
 namespace {

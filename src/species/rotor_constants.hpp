@@ -46,7 +46,7 @@ auto made_from(const FileMap& file, const std::string& key, const Make& make) {
   try {
     return make();
   } catch (const DomainError& error) {
-    file.refuse(key, {error.what(), "constants that make a rotor", "check signs, units and the order A >= B >= C"});
+    file.refuse(key, {error.what(), "constants that make a rotor", "check signs, units, the order A >= B >= C, and that the spin rule is one for this kind of rotor"});
   }
 }
 

@@ -1,10 +1,9 @@
-#include <trotline/species/species.hpp>
-
 #include <algorithm>
 #include <array>
 #include <cmath>
 
 #include <trotline/base/errors.hpp>
+#include <trotline/species/species.hpp>
 
 namespace trotline {
 namespace {
@@ -94,8 +93,8 @@ bool is_pair(std::string_view label, std::string_view upper, std::string_view lo
 }  // namespace
 
 std::string_view name_of(SpeciesKind kind) {
-  constexpr std::array<std::string_view, 8> kNames = {
-      "linear", "symmetric", "asymmetric", "triplet_sigma", "inversion", "structure", "levels", "line_list"};
+  constexpr std::array<std::string_view, 8> kNames = {"linear",    "symmetric", "asymmetric", "triplet_sigma",
+                                                      "inversion", "structure", "levels",     "line_list"};
   return kNames.at(static_cast<std::size_t>(kind));
 }
 

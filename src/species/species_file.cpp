@@ -1,5 +1,3 @@
-#include <trotline/species/species_file.hpp>
-
 #include <fmt/format.h>
 
 #include <algorithm>
@@ -7,6 +5,7 @@
 
 #include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/species/species_file.hpp>
 
 #include "species_kinds.hpp"
 

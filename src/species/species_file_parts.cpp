@@ -113,8 +113,10 @@ RotorOptions options_for(const Validity& validity) {
 RotorOptions options_for(const Validity& validity, double smallest_hz) {
   constexpr double kDistortion = 1.3;  // how far distortion may stretch J; a ladder that ends sooner says so
   RotorOptions options = options_for(validity);
+  if (!(smallest_hz > 0.0)) return options;  // the model refuses such a constant by name
   const double j = kDistortion * std::sqrt(options.highest_energy_hz / smallest_hz);
-  options.highest_j = std::clamp(static_cast<int>(std::min(j, 1e6)) + 2, validity.largest_j + 1, kHighestJ);
+  options.highest_j =
+      std::min(std::max(static_cast<int>(std::min(j, 1e6)) + 2, validity.largest_j + 1), kHighestJ);
   return options;
 }
 

@@ -83,9 +83,9 @@ void scale_to_parent(const FileMap& file, const Structure& structure, RigidRotor
   if (!linear) rotor.a_hz = estimated.a.value_hz;
   rotor.b_hz = estimated.b.value_hz;
   rotor.c_hz = estimated.c.value_hz;
-  species.warnings.push_back(fmt::format(
-      "B = {:.3f} MHz is estimated from a parent's, with an expected error of {:.2g} %", rotor.b_hz * 1e-6,
-      100.0 * estimated.b.relative_error));
+  species.warnings.push_back(
+      fmt::format("B = {:.3f} MHz is estimated from a parent's, with an expected error of {:.2g} %",
+                  rotor.b_hz * 1e-6, 100.0 * estimated.b.relative_error));
   cite(map, "constants of the parent", species);
   map.finish();
 }
@@ -98,11 +98,11 @@ RotorModel model_of(const RigidRotor& rotor, const SpinRule& spin, const Validit
     case RotorClass::linear:
       return linear_model({.b_hz = rotor.b_hz}, {.mu0_c_m = mu.a_c_m}, spin, options);
     case RotorClass::prolate:
-      return symmetric_model({.axial_hz = rotor.a_hz, .b_hz = 0.5 * (rotor.b_hz + rotor.c_hz)}, mu.a_c_m, spin,
-                             options);
+      return symmetric_model({.axial_hz = rotor.a_hz, .b_hz = 0.5 * (rotor.b_hz + rotor.c_hz)}, mu.a_c_m,
+                             spin, options);
     case RotorClass::oblate:
-      return symmetric_model({.axial_hz = rotor.c_hz, .b_hz = 0.5 * (rotor.a_hz + rotor.b_hz)}, mu.c_c_m, spin,
-                             options);
+      return symmetric_model({.axial_hz = rotor.c_hz, .b_hz = 0.5 * (rotor.a_hz + rotor.b_hz)}, mu.c_c_m,
+                             spin, options);
     case RotorClass::spherical:
       return spherical_model({.b_hz = rotor.b_hz}, options);
     case RotorClass::asymmetric:

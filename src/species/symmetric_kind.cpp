@@ -14,8 +14,9 @@ SymmetricConstants read_top(const FileMap& file, const FileMap& map) {
   SymmetricConstants constants;
   constants.b_hz = map.quantity("B", Dimension::frequency);
   if (map.has("A") == map.has("C")) {
-    file.refuse("constants", {map.has("A") ? "'constants' has both A and C" : "'constants' has neither A nor C",
-                              "B and A for a prolate rotor, B and C for an oblate one"});
+    file.refuse("constants",
+                {map.has("A") ? "'constants' has both A and C" : "'constants' has neither A nor C",
+                 "B and A for a prolate rotor, B and C for an oblate one"});
   }
   const char* const axial = map.has("A") ? "A" : "C";
   constants.axial_hz = map.quantity(axial, Dimension::frequency);
@@ -93,8 +94,7 @@ void read_inversion(const FileMap& file, Species& species) {
   const auto spin = read_spin(file, species);
   auto modes = read_vibration(file, species);
   const Validity validity = read_validity(file);
-  const RotorOptions options =
-      options_for(validity, std::min(constants.mean.b_hz, constants.mean.axial_hz));
+  const RotorOptions options = options_for(validity, std::min(constants.mean.b_hz, constants.mean.axial_hz));
   const auto make = [&] { return inverting_model(constants, mu_c_m, *spin, options); };
   take_model(made_from(file, "constants", make), validity, std::move(modes), species);
 }

@@ -37,7 +37,9 @@ void read_triplet_sigma(const FileMap& file, Species& species) {
   const auto spin = read_spin(file, species);
   auto modes = read_vibration(file, species);
   const Validity validity = read_validity(file);
-  const auto make = [&] { return triplet_sigma_model(constants, mu_c_m, *spin, options_for(validity, constants.b_hz)); };
+  const auto make = [&] {
+    return triplet_sigma_model(constants, mu_c_m, *spin, options_for(validity, constants.b_hz));
+  };
   take_model(made_from(file, "constants", make), validity, std::move(modes), species);
 }
 

@@ -6,7 +6,9 @@
 #include <cstdlib>
 #include <filesystem>
 #include <fstream>
+#include <numbers>
 
+#include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/species/species_file.hpp>
 
@@ -33,10 +35,12 @@ class KeptList : public testing::Test {
       const int j = 1 + i / 90;
       const int k = std::min(i % 90, j - 1);
       if (k != i % 90) continue;
+      const double lower_per_cm = (1.0 * j * (j - 1) + 59.0 * k * k) * kPerGhz;
+      const double log10_boltzmann = -lower_per_cm / 208.51 / std::numbers::ln10;  // kT/hc at 300 K
       fmt::format_to(std::back_inserter(text),
                      "{:13.4f}{:8.4f}{:8.4f} 3{:10.4f}{}  99001 202{}{:2}        {}{:2}        \n",
-                     2000.0 * j, 0.001, -5.0 - 0.001 * k, (1.0 * j * (j - 1) + 59.0 * k * k) * kPerGhz,
-                     degeneracy(2 * j + 1), number(j), k, number(j - 1), k);
+                     2000.0 * j, 0.001, -5.0 + log10_boltzmann, lower_per_cm, degeneracy(2 * j + 1),
+                     number(j), k, number(j - 1), k);
     }
     folder.file("made.cat", text);
   }
@@ -137,6 +141,17 @@ TEST_F(KeptList, IsReadAnewWhereItsBytesAreDamaged) {
   for (const std::size_t length : {std::size_t{0}, std::size_t{10}, std::size_t{64}, good.size() - 8}) {
     std::ofstream(kept_file(), std::ios::binary) << good.substr(0, length);
     expect_same(first, open());
+  }
+}
+
+/// Rows that cannot be sorted, and A that no line has: both end with the row's own line.
+TEST_F(KeptList, RefusesRowsThatAreNoNumbers) {
+  folder.file("q.txt", "10 1\n20 2\nnan 3\n40 4\n50 5\n");
+  try {
+    (void)open("file: q.txt\n  temperature_unit: K");
+    FAIL() << "accepted";
+  } catch (const InputError& error) {
+    EXPECT_EQ(error.place().line, 3u) << error.what();
   }
 }
 

@@ -72,6 +72,12 @@ std::string linear_rows(int n, int weight = 1) {
   return text;
 }
 
+TEST_F(LineListSpecies, RefusesAnAThatNoLineHas) {
+  const std::string rows = linear_rows(5) + row(120000.0, 10000.0 * 30 / kMhzPerWavenumberCm, 13, 101,
+                                                " 6           5          ", 99.0);
+  EXPECT_THAT(complaint_about(rows), testing::AllOf(HasSubstr("made.cat:6"), HasSubstr("A would be")));
+}
+
 TEST_F(LineListSpecies, RebuildsTheLevelsOfALinearRotor) {
   const Species species = from_list(linear_rows(40));
   ASSERT_EQ(species.levels.size(), 41u);

@@ -58,6 +58,14 @@ TEST(SpeciesCheck, DoubtsAnAThatNoDipoleMakes) {
   EXPECT_EQ(verdict_on(species, "dipole moment"), Verdict::doubtful);
 }
 
+/// Until 2026-12-01 both sums underflowed to 0 where a list has its own zero, and 0/0 was called wrong.
+TEST(SpeciesCheck, FindsNothingWrongWhereTheLowestLevelLiesAboveZero) {
+  Species species = formaldehyde();
+  for (Level& level : species.levels) level.energy_k += 15.0;
+  species.partition = partition_function_from_levels(species.levels);
+  EXPECT_EQ(verdict_on(species, "Q at low temperature"), Verdict::in_order);
+}
+
 TEST(SpeciesCheck, DoubtsLevelsThatStopShort) {
   Species species = formaldehyde();
   std::erase_if(species.transitions,

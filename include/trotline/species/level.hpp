@@ -8,7 +8,7 @@ namespace trotline {
 /// One energy level of a species.
 struct Level {
   std::string label;        ///< quantum numbers, e.g. "2" (J), "12(3)" (J(K)), "3(1,2)" (J(Ka,Kc))
-  double energy_k = 0.0;    ///< E/k [K] above the lowest level of the species
+  double energy_k = 0.0;    ///< E/k [K] above the lowest level of the species (the zero of its list, where that lies lower)
   double degeneracy = 1.0;  ///< g = (2J+1) times spin weight, in the convention of the species
   std::string spin;         ///< spin isomer, e.g. "ortho"; empty where the species has only one
 };

@@ -16,18 +16,16 @@ enum class LineListIntensity {
 
 /// One row of an 80-column line list, as printed; quantum numbers decoded.
 ///
-/// | columns | Fortran | holds |
-/// |---|---|---|
-/// | 1-13  | F13.4 | frequency [MHz]; [1/cm] where the uncertainty is negative |
-/// | 14-21 | F8.4  | its uncertainty, in the same unit |
-/// | 22-29 | F8.4  | log10 of intensity, see LineListIntensity |
-/// | 30-31 | I2    | rotational degrees of freedom |
-/// | 32-41 | F10.4 | energy of the lower state [1/cm] |
-/// | 42-44 | I3    | degeneracy of the upper state; 1000 and more with a letter in front, A00 = 1000, B00 =
-/// 1100 | | 45-51 | I7    | tag of the species; negative where the frequency was measured | | 52-55 | I4    |
-/// format of the quantum numbers: 100 Q + 10 H + n | | 56-67 | 6I2   | quantum numbers of the upper state; n
-/// up to 6 | | 68-79 | 6I2   | those of the lower state; where n > 6 they follow the upper state's n directly
-/// |
+/// - columns 1-13 (F13.4): frequency [MHz]; [1/cm] where the uncertainty is negative
+/// - 14-21 (F8.4): its uncertainty, in the same unit
+/// - 22-29 (F8.4): log10 of intensity, see LineListIntensity
+/// - 30-31 (I2): rotational degrees of freedom
+/// - 32-41 (F10.4): energy of the lower state [1/cm]
+/// - 42-44 (I3): degeneracy of the upper state; 1000 and more with a letter in front, A00 = 1000, B00 = 1100
+/// - 45-51 (I7): tag of the species; negative where the frequency was measured
+/// - 52-55 (I4): format of the quantum numbers: 100 Q + 10 H + n
+/// - 56-67 (6I2): quantum numbers of the upper state; n up to 6
+/// - 68-79 (6I2): those of the lower state; where n > 6 they follow the upper state's n directly
 ///
 /// Reference: Pickett et al. 1998, JQSRT 60, 883, section 5, and the documentation of the published
 /// catalogues in that format. The rule of the negative uncertainty is cited from memory; a row to which it

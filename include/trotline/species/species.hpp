@@ -36,7 +36,7 @@ struct Species {
   std::string name;     ///< ASCII, as a person types it: "13CO", "c-C3H2", "HCO+"
   std::string formula;  ///< the same, for print; often equal
   SpeciesKind kind = SpeciesKind::levels;
-  std::vector<Level> levels;            ///< by rising energy; the first has energy 0
+  std::vector<Level> levels;            ///< by rising energy; the first has energy 0, but in a line list that has its own zero
   std::vector<Transition> transitions;  ///< by rising frequency
   std::shared_ptr<const PartitionFunction> partition;
   std::vector<Citation> citations;
