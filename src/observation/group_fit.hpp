@@ -1,0 +1,20 @@
+// Gaussians of one velocity and width for the lines of a group.
+#pragma once
+
+#include "region.hpp"
+
+namespace trotline {
+
+/// Gaussians fitted to a region, with errors.
+struct FittedLines {
+  std::vector<GaussianLine> lines;
+  std::vector<LinearSum> areas;
+  std::string trouble;
+  double strongest_correlation = 0.0;  ///< between the areas of two lines
+  Eigen::ArrayXd model;                ///< over the region, without baseline
+};
+
+[[nodiscard]] FittedLines fit_group(const MeasurementContext& context, const LineGroup& group,
+                                    const Region& region);
+
+}  // namespace trotline
