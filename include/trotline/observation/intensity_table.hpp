@@ -11,9 +11,9 @@ namespace trotline {
 
 /// The scale on which intensities are given.
 enum class IntensityScale {
-  main_beam,           ///< T_mb [K km/s]
-  antenna,             ///< T_A*, corrected for the atmosphere and rear losses [K km/s]
-  flux_per_beam        ///< velocity-integrated flux density per beam [Jy/beam km/s]
+  main_beam,     ///< T_mb [K km/s]
+  antenna,       ///< T_A*, corrected for the atmosphere and rear losses [K km/s]
+  flux_per_beam  ///< velocity-integrated flux density per beam [Jy/beam km/s]
 };
 
 /// One row: one measured line, or one member of a blend.
