@@ -80,7 +80,7 @@ class GroupMeasurement {
     result.intensity = sum.value;
     result.noise_sigma = sum.noise_sigma;
     result.baseline_sigma = sum.baseline_sigma;
-    result.calibration_sigma = std::abs(sum.value) * context_.options.calibration_error;
+    result.calibration_sigma = std::abs(sum.value) * context_.spectrum.calibration_error.value_or(context_.options.calibration_error);
     result.limit = context_.options.limit_in_sigma * sum.sigma();
     result.detected = sum.value >= result.limit;
   }
@@ -233,7 +233,6 @@ std::optional<BestLine> fit_best_line(const MeasurementContext& context,
                                       const std::vector<LineGroup>& groups) {
   std::optional<BestLine> best;
   for (const LineGroup& group : groups) {
-    if (group.size() > 1) continue;
     for (const LineMeasurement& line : measure_group(context, group)) {
       if (!line.gaussian || !line.is_trusted()) continue;
       const double signal_to_noise = line.gaussian->area.value / line.gaussian->area.sigma;

@@ -20,7 +20,7 @@ struct MeasurementContext {
 [[nodiscard]] std::vector<LineMeasurement> measure_group(const MeasurementContext& context,
                                                          const LineGroup& group);
 
-/// A Gaussian fit to the one line that stands out most in its window, to find a common window.
+/// A Gaussian fit to the line that stands out most in its window, to find a common window.
 struct BestLine {
   double signal_to_noise = 0.0;
   double velocity_km_s = 0.0;

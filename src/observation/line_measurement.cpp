@@ -47,6 +47,9 @@ class Measurer {
       : spectrum_(spectrum), requests_(requests), options_(options) {}
 
   SpectrumMeasurement run() {
+    result_.spectrum = spectrum_.name;
+    result_.object = spectrum_.object;
+    result_.scale = spectrum_.scale;
     result_.window = about(options_.vlsr_km_s, options_.window_km_s.value_or(options_.search_km_s));
     place_all();
     if (!options_.window_km_s) find_window();
@@ -98,6 +101,7 @@ class Measurer {
                       options_.search_km_s));
       return;
     }
+    result_.window_snr = best->signal_to_noise;
     result_.window = about(best->velocity_km_s, std::max(3.0 * best->fwhm_km_s, 5.0 * best->channel_km_s));
     place_all();
   }

@@ -35,7 +35,8 @@ IntensityRow row_of(const Spectrum& spectrum, const LineMeasurement& line,
   if (!line.tag.empty()) row.species = line.tag;
   row.beam_fwhm_rad = spectrum.beam_fwhm_rad;
   if (line.gaussian && line.blend.empty()) row.fwhm_km_s = line.gaussian->fwhm_km_s.value;
-  if (options.calibration_error > 0.0) row.calibration_error = options.calibration_error;
+  const double calibration = spectrum.calibration_error.value_or(options.calibration_error);
+  if (calibration > 0.0) row.calibration_error = calibration;
   row.forward_efficiency = spectrum.forward_efficiency;
   row.main_beam_efficiency = spectrum.main_beam_efficiency;
   if (!line.blend.empty()) row.blend = line.blend;

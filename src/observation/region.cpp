@@ -28,6 +28,7 @@ std::string Region::prepare() {
   auto fit = fit_baseline(baseline_data(), line_free_, context_.correlation, context_.options.baseline);
   if (!fit) return fmt::format("{} line-free channels are too few for the baseline", line_free_.size());
   fit_ = std::move(*fit);
+  if (context_.spectrum.noise_sigma) fit_->rms = *context_.spectrum.noise_sigma;
   if (!(fit_->rms > 0.0)) return "the spectrum has no noise, so that no error can be given";
   baseline_ = fit_->baseline.values();
   return {};

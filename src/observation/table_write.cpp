@@ -30,6 +30,13 @@ std::string quoted_where_needed(const std::string& text) {
   return quoted + '"';
 }
 
+/// A scalar in YAML's double quotes, on one line.
+std::string yaml_quoted(const std::string& text) {
+  std::string quoted = "\"";
+  for (const char c : printable(text)) quoted += c == '"' || c == '\\' ? std::string{'\\', c} : std::string(1, c);
+  return quoted + '"';
+}
+
 /// The shortest number of units that reads back to exactly `value`; nothing where rounding leaves none.
 std::optional<std::string> exact_in(double value, double factor) {
   constexpr int kNeighbours = 4;
@@ -57,7 +64,7 @@ std::optional<std::vector<std::string>> written_in(const std::vector<std::option
 
 class Writer {
  public:
-  explicit Writer(const std::vector<IntensityRow>& rows) : rows_(rows) {}
+  explicit Writer(const IntensityTable& table) : rows_(table.rows), provenance_(table.provenance) {}
 
   /// @param units  the first in which every value reads back to the same bits is taken; the last has factor 1
   template <class Get>
@@ -94,6 +101,10 @@ class Writer {
       const std::string unit = column.unit.empty() ? "" : fmt::format(", unit: {}", column.unit);
       text += fmt::format("# - {{name: {}{}, datatype: {}}}\n", column.name, unit, column.datatype);
     }
+    if (!provenance_.empty()) text += "# meta:\n";
+    for (const auto& [name, value] : provenance_) {
+      text += fmt::format("#   {}: {}\n", name, yaml_quoted(value));
+    }
     text += line([](const OutColumn& column) { return column.name; });
     for (std::size_t i = 0; i < rows_.size(); ++i) {
       text += line([i](const OutColumn& column) { return column.cells[i]; });
@@ -110,6 +121,7 @@ class Writer {
   }
 
   const std::vector<IntensityRow>& rows_;
+  const std::vector<std::pair<std::string, std::string>>& provenance_;
   std::vector<OutColumn> columns_;
 };
 
@@ -140,7 +152,7 @@ std::optional<std::string> name_of_scale(IntensityScale scale) {
 }  // namespace
 
 std::string to_ecsv(const IntensityTable& table) {
-  Writer writer(table.rows);
+  Writer writer(table);
   const OutUnit kelvin_or_flux = intensity_unit(table);
   using Row = IntensityRow;
   writer.texts("transition", "string", [](const Row& row) { return row.transition; });

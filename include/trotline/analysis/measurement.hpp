@@ -1,7 +1,9 @@
 #pragma once
 
+#include <functional>
 #include <optional>
 #include <string>
+#include <utility>
 #include <vector>
 
 #include <trotline/observation/line_measurement.hpp>
@@ -15,6 +17,8 @@ struct LineSelection {
   double excitation_k = 50.0;    ///< temperature at which strengths are compared [K], > 0
   double least_strength = 1e-3;  ///< weaker lines, relative to the strongest one in the bands, are left out
   std::vector<std::string> only_lines = {};  ///< labels; empty: all. Lines that are named are never too weak
+  std::vector<std::string> without_lines = {};  ///< labels that are left out
+  std::vector<std::pair<std::string, VelocityRange>> windows = {};  ///< by label, in place of the common one
 };
 
 /// The transitions of a species between two frequencies that are strong enough, as requests for
@@ -43,9 +47,30 @@ struct SpeciesMeasurement {
   std::vector<std::string> warnings;
 };
 
+/// How measure_species() runs; nothing here changes a number.
+struct MeasurementRun {
+  int threads = 1;
+  std::function<void(std::size_t done, std::size_t of)> progress = {};  ///< called from one thread at a time
+};
+
+/// Spectra that are read when they are wanted, so that a large file need not be in memory whole.
+struct SpectrumSource {
+  std::size_t size = 0;
+  std::function<Spectrum(std::size_t)> read;  ///< may be called from several threads
+};
+
 /// Measures every line of the species that the spectra cover.
 ///
-/// Without a width of the windows each spectrum finds its own, from its strongest line.
+/// Without a width of the windows each spectrum finds its own, from its strongest line; a spectrum in which no
+/// line stands out takes the window of the spectrum of the same object in which one does best. Marks of blends
+/// tell spectra apart. The same spectra give the same bits, whatever the number of threads.
+[[nodiscard]] SpeciesMeasurement measure_species(const SpectrumSource& spectra, const Species& species,
+                                                 const LineSelection& selection,
+                                                 const MeasurementOptions& options,
+                                                 const Confusion& confusion = {},
+                                                 const MeasurementRun& run = {});
+
+/// The same for spectra in memory.
 [[nodiscard]] SpeciesMeasurement measure_species(const std::vector<Spectrum>& spectra, const Species& species,
                                                  const LineSelection& selection,
                                                  const MeasurementOptions& options,

@@ -72,7 +72,7 @@ struct BaselineFit {
 
 struct BaselineOptions {
   std::optional<int>
-      order;  ///< nothing: chosen by the Bayesian information criterion, counting independent channels
+      order;  ///< nothing: averaged over orders with Akaike weights, counting independent channels
   int highest_order = 5;  ///< of the automatic choice
 };
 

@@ -3,6 +3,7 @@
 #include <optional>
 #include <string>
 #include <string_view>
+#include <utility>
 #include <vector>
 
 #include <trotline/base/errors.hpp>
@@ -42,6 +43,8 @@ struct IntensityTable {
   std::string file;
   std::vector<IntensityRow> rows;
   std::vector<std::string> warnings;  ///< e.g. columns that were not understood and passed over
+  /// How it was made, as names and texts: written along, not read back.
+  std::vector<std::pair<std::string, std::string>> provenance = {};
 };
 
 enum class TableFormat { automatic, ecsv, csv, text, fits };

@@ -62,16 +62,16 @@ enum class LineStatus {
 };
 
 /// A value and its standard error from noise and baseline, without calibration.
-struct Estimate {
+struct Measured {
   double value = 0.0;
   double sigma = 0.0;
 };
 
 struct GaussianLine {
-  Estimate area;           ///< same unit as the intensity
-  Estimate velocity_km_s;  ///< V_LSR
-  Estimate fwhm_km_s;
-  Estimate peak;  ///< [K] or [Jy/beam]
+  Measured area;           ///< same unit as the intensity
+  Measured velocity_km_s;  ///< V_LSR
+  Measured fwhm_km_s;
+  Measured peak;  ///< [K] or [Jy/beam]
 };
 
 /// The data about one line, for a drawing.
@@ -117,8 +117,12 @@ struct LineMeasurement {
 };
 
 struct SpectrumMeasurement {
+  std::string spectrum;  ///< its name, object and scale, as Spectrum has them
+  std::optional<std::string> object;
+  IntensityScale scale = IntensityScale::main_beam;
   std::vector<LineMeasurement> lines;  ///< one for each request with `measure`, in the order of the requests
   VelocityRange window;                ///< the common one
+  double window_snr = 0.0;             ///< of the line that the window was found from; 0: it was not found
   NoiseCorrelation correlation;
   std::vector<std::string> warnings;
 };

@@ -30,8 +30,8 @@ struct NoiseCorrelation {
 ///
 /// The channels are taken in blocks; each loses a polynomial of order 3 and outliers beyond 4 times the
 /// scaled median absolute deviation. What the polynomial takes away from the autocovariance is put back (to
-/// first order in correlation length over block length). Lags count until two in a row are within 2.5 /
-/// sqrt(n) of zero.
+/// first order in correlation length over block length). Lags count until two in a row are within 1.7
+/// standard errors (Bartlett) of zero; 64 are the most.
 ///
 /// @param intensity  one value a channel; NaN is a hole
 /// @param excluded   true where a line may lie; same length

@@ -24,6 +24,8 @@ struct Spectrum {
   std::optional<double> beam_fwhm_rad;      ///< geometric mean for an elliptical beam
   std::optional<double> forward_efficiency;
   std::optional<double> main_beam_efficiency;
+  std::optional<double> noise_sigma;        ///< of one channel, where it is stated; otherwise it is measured
+  std::optional<double> calibration_error;  ///< fraction, where this spectrum has one of its own
   std::string axis_type;              ///< in which the file has the axis, e.g. "VRAD"
   RestFrame frame = RestFrame::lsrk;  ///< in which the file has it
   std::vector<std::string> warnings;
