@@ -4,17 +4,12 @@
 #include <trotline/observation/intensity_table.hpp>
 #include <trotline/physics/quantity.hpp>
 
+#include "out_columns.hpp"
+
 namespace trotline {
 namespace {
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
-
-struct OutColumn {
-  std::string name;
-  std::string datatype;
-  std::string unit;
-  std::vector<std::string> cells;
-};
 
 /// A unit in which a column may be written, and how many units of the row one of it is.
 struct OutUnit {
@@ -62,9 +57,16 @@ std::optional<std::vector<std::string>> written_in(const std::vector<std::option
   return cells;
 }
 
+template <class Get>
+std::string line_of(const std::vector<OutColumn>& columns, const Get& get) {
+  std::string text;
+  for (std::size_t i = 0; i < columns.size(); ++i) text += (i == 0 ? "" : ",") + get(columns[i]);
+  return text + "\n";
+}
+
 class Writer {
  public:
-  explicit Writer(const IntensityTable& table) : rows_(table.rows), provenance_(table.provenance) {}
+  explicit Writer(const std::vector<IntensityRow>& rows) : rows_(rows) {}
 
   /// @param units  the first in which every value reads back to the same bits is taken; the last has factor 1
   template <class Get>
@@ -90,38 +92,15 @@ class Writer {
     for (const IntensityRow& row : rows_) {
       const std::optional<std::string> text = get(row);
       any = any || (text && !text->empty());
-      column.cells.push_back(quoted_where_needed(text.value_or("")));
+      column.cells.push_back(text.value_or(""));
     }
     if (any) columns_.push_back(std::move(column));
   }
 
-  [[nodiscard]] std::string ecsv() const {
-    std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
-    for (const OutColumn& column : columns_) {
-      const std::string unit = column.unit.empty() ? "" : fmt::format(", unit: {}", column.unit);
-      text += fmt::format("# - {{name: {}{}, datatype: {}}}\n", column.name, unit, column.datatype);
-    }
-    if (!provenance_.empty()) text += "# meta:\n";
-    for (const auto& [name, value] : provenance_) {
-      text += fmt::format("#   {}: {}\n", name, yaml_quoted(value));
-    }
-    text += line([](const OutColumn& column) { return column.name; });
-    for (std::size_t i = 0; i < rows_.size(); ++i) {
-      text += line([i](const OutColumn& column) { return column.cells[i]; });
-    }
-    return text;
-  }
+  [[nodiscard]] std::vector<OutColumn> take() { return std::move(columns_); }
 
  private:
-  template <class Get>
-  [[nodiscard]] std::string line(const Get& get) const {
-    std::string text;
-    for (std::size_t i = 0; i < columns_.size(); ++i) text += (i == 0 ? "" : ",") + get(columns_[i]);
-    return text + "\n";
-  }
-
   const std::vector<IntensityRow>& rows_;
-  const std::vector<std::pair<std::string, std::string>>& provenance_;
   std::vector<OutColumn> columns_;
 };
 
@@ -151,8 +130,8 @@ std::optional<std::string> name_of_scale(IntensityScale scale) {
 
 }  // namespace
 
-std::string to_ecsv(const IntensityTable& table) {
-  Writer writer(table);
+std::vector<OutColumn> out_columns(const IntensityTable& table) {
+  Writer writer(table.rows);
   const OutUnit kelvin_or_flux = intensity_unit(table);
   using Row = IntensityRow;
   writer.texts("transition", "string", [](const Row& row) { return row.transition; });
@@ -181,7 +160,24 @@ std::string to_ecsv(const IntensityTable& table) {
                  [](const Row& row) { return row.main_beam_efficiency; });
   writer.texts("blend", "string", [](const Row& row) { return row.blend; });
   writer.texts("note", "string", [](const Row& row) { return row.note; });
-  return writer.ecsv();
+  return writer.take();
+}
+
+std::string to_ecsv(const IntensityTable& table) {
+  const std::vector<OutColumn> columns = out_columns(table);
+  std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
+  for (const OutColumn& column : columns) {
+    const std::string unit = column.unit.empty() ? "" : fmt::format(", unit: {}", column.unit);
+    text += fmt::format("# - {{name: {}{}, datatype: {}}}\n", column.name, unit, column.datatype);
+  }
+  if (!table.provenance.empty()) text += "# meta:\n";
+  for (const auto& [name, value] : table.provenance)
+    text += fmt::format("#   {}: {}\n", name, yaml_quoted(value));
+  text += line_of(columns, [](const OutColumn& column) { return column.name; });
+  for (std::size_t i = 0; i < table.rows.size(); ++i) {
+    text += line_of(columns, [i](const OutColumn& column) { return quoted_where_needed(column.cells[i]); });
+  }
+  return text;
 }
 
 }  // namespace trotline

@@ -70,4 +70,8 @@ enum class TableFormat { automatic, ecsv, csv, text, fits };
 /// parse_intensity_table reads back to the same bits. Columns that no row fills are left out.
 [[nodiscard]] std::string to_ecsv(const IntensityTable& table);
 
+/// The same as the bytes of a FITS file with one binary table, the provenance as HISTORY. Numbers are 64-bit
+/// and read back to the same bits; of texts FITS keeps printable ASCII, other characters become '?'.
+[[nodiscard]] std::string to_fits(const IntensityTable& table);
+
 }  // namespace trotline
