@@ -30,11 +30,37 @@ std::mutex& wcslib_mutex() {
   return mutex;
 }
 
+/// A text must end in its card: the scanner of wcslib 7.12 reads on into the next one and overruns its buffer.
+void require_closed_text(std::string_view line, const HeaderCards& cards) {
+  if (line.substr(8, 2) != "= ") return;
+  const std::string_view value = trimmed(line.substr(10));
+  if (!value.starts_with('\'')) return;
+  for (std::size_t i = 1; i < value.size(); ++i) {
+    const bool doubled = value[i] == '\'' && i + 1 < value.size() && value[i + 1] == '\'';
+    if (value[i] == '\'' && !doubled) return;
+    i += doubled ? 1 : 0;
+  }
+  cards.refuse(fmt::format("the text of keyword {} does not end", printable(trimmed(line.substr(0, 8)))),
+               "a text in single quotes");
+}
+
+/// The cards as wcslib can read them without harm: printable ASCII, and texts that end.
+std::string harmless(const HeaderCards& cards) {
+  std::string copy(cards.cards());
+  for (char& c : copy) {
+    if (c < ' ' || c > '~') c = ' ';
+  }
+  for (std::size_t at = 0; at + kFitsCard <= copy.size(); at += kFitsCard) {
+    require_closed_text(std::string_view(copy).substr(at, kFitsCard), cards);
+  }
+  return copy;
+}
+
 /// The coordinate systems of one header.
 class ParsedHeader {
  public:
   explicit ParsedHeader(const HeaderCards& cards) {
-    std::string copy(cards.cards());
+    std::string copy = harmless(cards);
     int rejected = 0;
     const int status = wcspih(copy.data(), static_cast<int>(copy.size() / kFitsCard), WCSHDR_all, 0,
                               &rejected, &count_, &systems_);
