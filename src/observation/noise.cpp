@@ -112,6 +112,14 @@ NoiseCorrelation correlation_of(const Autocovariance& measured) {
 
 double NoiseCorrelation::channels_per_independent_one() const { return 2.0 * rho.sum() - 1.0; }
 
+double NoiseCorrelation::scatter_of_variance(std::size_t measured) const {
+  double scatter = 0.0;
+  if (measured > 0) scatter = 2.0 * (2.0 * rho.square().sum() - 1.0) / static_cast<double>(measured);
+  const auto lags = static_cast<double>(rho.size() - 1);
+  if (channels > 0 && lags > 0.0) scatter += 2.0 * (2.0 * lags + 1.0) / static_cast<double>(channels);
+  return scatter;
+}
+
 double NoiseCorrelation::covariance_of(const Eigen::Ref<const Eigen::VectorXd>& a,
                                        const Eigen::Ref<const Eigen::VectorXd>& b) const {
   double total = a.dot(b);

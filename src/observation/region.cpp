@@ -79,32 +79,30 @@ LinearSum Region::evaluate(const Eigen::VectorXd& on_data, const Eigen::VectorXd
   for (Eigen::Index i = 0; i < on_data.size(); ++i) {
     if (on_data(i) != 0.0) result.value += on_data(i) * data()(i);
   }
-  const Eigen::VectorXd parts = baseline.coefficients().cwiseProduct(projections);
-  const double taken = baseline.shares().dot(parts);
-  result.value -= taken;
-  const double noise = fit_->rms * fit_->rms * context_.correlation.variance_of(on_data);
+  result.value -= baseline.shares().dot(baseline.coefficients().cwiseProduct(projections));
+  const std::size_t measured = context_.spectrum.noise_sigma ? 0 : fit_->channels.size();
+  const double unit =
+      fit_->rms * fit_->rms * (1.0 + context_.correlation.scatter_of_variance(measured));
+  const double noise = unit * context_.correlation.variance_of(on_data);
+  const double total = unit * (context_.correlation.variance_of(result.total_weights) + doubt(projections));
   result.noise_sigma = std::sqrt(noise);
-  result.baseline_sigma = std::sqrt(std::max(0.0, variance_over_orders(on_data, projections, taken) - noise));
+  result.baseline_sigma = std::sqrt(std::max(0.0, total - noise));
   return result;
 }
 
-/// The mean over the orders of the variance that each has, and the variance between them.
-double Region::variance_over_orders(const Eigen::VectorXd& on_data, const Eigen::VectorXd& projections,
-                                    double taken) const {
-  constexpr double kNegligible = 1e-4;
+/// What the choice of the order adds to the variance, over that of a channel. A coefficient whose share is s is
+/// one that a Gaussian prior of variance s / (1 - s) times its own variance shrinks; what is then missing has
+/// the expected square s (1 - s) times that variance. 0 for a baseline of one order.
+double Region::doubt(const Eigen::VectorXd& projections) const {
   const Baseline& baseline = fit_->baseline;
-  Eigen::VectorXd weights = on_data;
-  double part = 0.0;
-  double total = 0.0;
-  for (Eigen::Index order = 0; order < projections.size(); ++order) {
-    weights -= baseline.spread_basis().col(order) * projections(order);
-    part += baseline.coefficients()(order) * projections(order);
-    const double weight = baseline.weights()(order);
-    if (weight < kNegligible) continue;
-    const double variance = fit_->rms * fit_->rms * context_.correlation.variance_of(weights);
-    total += weight * (variance + (part - taken) * (part - taken));
+  double sum = 0.0;
+  for (Eigen::Index k = 0; k < projections.size(); ++k) {
+    const double share = baseline.shares()(k);
+    if (share == 1.0) continue;
+    sum += share * (1.0 - share) * projections(k) * projections(k) *
+           context_.correlation.variance_of(baseline.spread_basis().col(k));
   }
-  return total;
+  return sum;
 }
 
 double Region::width_km_s(Eigen::Index channel, double rest_frequency_hz) const {

@@ -57,8 +57,7 @@ class Region {
   [[nodiscard]] BaselineData baseline_data() const;
   [[nodiscard]] bool is_line_free(Eigen::Index channel) const;
   [[nodiscard]] Eigen::VectorXd bridged(const Eigen::VectorXd& ideal) const;
-  [[nodiscard]] double variance_over_orders(const Eigen::VectorXd& on_data,
-                                            const Eigen::VectorXd& projections, double taken) const;
+  [[nodiscard]] double doubt(const Eigen::VectorXd& projections) const;
   void move_weight(Eigen::Index hole, Eigen::VectorXd& weights) const;
 
   const MeasurementContext& context_;

@@ -72,7 +72,7 @@ struct BaselineFit {
 
 struct BaselineOptions {
   std::optional<int>
-      order;  ///< nothing: averaged over orders with Akaike weights, counting independent channels
+      order;  ///< nothing: averaged over orders, each weighing as the data ask for it
   int highest_order = 5;  ///< of the automatic choice
 };
 

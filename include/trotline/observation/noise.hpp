@@ -21,7 +21,13 @@ struct NoiseCorrelation {
   /// sum over i, j of a_i a_j rho(|i - j|): the variance of the sum of a_i x_i for noise x of variance 1.
   [[nodiscard]] double variance_of(const Eigen::Ref<const Eigen::VectorXd>& weights) const;
 
-  /// The same for two sums: their covariance.
+  /// Relative variance of a variance that is computed from this correlation and from the rms of `measured`
+  /// channels: 2 (1 + 2 sum rho^2) / measured for the rms, and, where channels are correlated up to lag L,
+  /// 2 (2 L + 1) / channels for the sum of the correlations (the scatter of a truncated spectral estimate at
+  /// frequency 0, textbook knowledge, from memory). A pull's variance is larger than 1 by about so much.
+  [[nodiscard]] double scatter_of_variance(std::size_t measured) const;
+
+  /// The covariance of two sums.
   [[nodiscard]] double covariance_of(const Eigen::Ref<const Eigen::VectorXd>& a,
                                      const Eigen::Ref<const Eigen::VectorXd>& b) const;
 };
