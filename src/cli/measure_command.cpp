@@ -11,9 +11,12 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/report/line_panels.hpp>
 #include <trotline/report/measurement_report.hpp>
+#include <trotline/report/model_file.hpp>
 
 #include "command_line.hpp"
+#include "figure_option.hpp"
 #include "interrupts.hpp"
 #include "verbs.hpp"
 
@@ -26,7 +29,7 @@ std::string with(char to, std::string text, char from) {
 }
 
 CommandSyntax syntax() {
-  CommandSyntax syntax{"measure", "SPECTRUM", true, {"species", "out", "jobs"}, {"json", "help"}, true};
+  CommandSyntax syntax{"measure", "SPECTRUM", true, {"species", "out", "jobs", "panels", "figures", "model"}, {"json", "help"}, true};
   for (const MeasureOption& option : measure_option_table())
     syntax.values.push_back(with('-', option.key, '_'));
   return syntax;
@@ -57,8 +60,67 @@ MeasureDescription description_of(const ParsedCommand& command) {
   }
   if (!description.vlsr_km_s)
     throw UsageError("the source's velocity is not given; add --vlsr, as in '--vlsr \"5.2 km/s\"'");
+  description.options.keep_panels = !command.value("panels").empty();
   return description;
 }
+
+/// What --panels and --model ask to be drawn.
+class Drawing {
+ public:
+  explicit Drawing(const ParsedCommand& command) : folder_(command.value("panels")) {
+    for (const std::string name : {"model", "figures"}) {
+      if (folder_.empty() && !command.value(name).empty())
+        throw UsageError(fmt::format("--{} needs --panels, the folder for the drawing", name));
+    }
+    if (const std::string formats = command.value("figures"); !formats.empty())
+      options_.formats = figure_formats(formats);
+    const SpeciesLibrary library(SpeciesLibrary::standard_folders());
+    for (const std::string& path : items_of(command.value("model")))
+      sources_.push_back(read_model_file(path, library));
+  }
+
+  void draw(SpeciesMeasurement& measurement, const MeasureDescription& description,
+            const Console& console) const {
+    if (folder_.empty()) return;
+    if (count_line_panels(measurement) == 0) {
+      console.err << "trotline: there is no line to draw\n";
+      return;
+    }
+    if (!sources_.empty()) predict(measurement, description);
+    OutputFolder folder(folder_);
+    (void)write_line_panels(measurement, folder.staging(), options_);
+    const auto names = folder.commit();
+    console.err << fmt::format("trotline: wrote {} to {}\n", listed(names), printable(folder_));
+    const std::size_t most = kMostPanelPages * kPanelsOnAPage;
+    if (const std::size_t panels = count_line_panels(measurement); panels > most)
+      console.err << fmt::format("trotline: drew the first {} of {} lines\n", most, panels);
+  }
+
+ private:
+  static std::vector<std::string> items_of(const std::string& text) {
+    std::vector<std::string> items;
+    for (std::size_t start = 0; start < text.size();) {
+      const std::size_t comma = std::min(text.find(',', start), text.size());
+      if (const auto item = trimmed(std::string_view(text).substr(start, comma - start)); !item.empty())
+        items.emplace_back(item);
+      start = comma + 1;
+    }
+    return items;
+  }
+
+  void predict(SpeciesMeasurement& measurement, const MeasureDescription& description) const {
+    const PredictedProfile given{*description.vlsr_km_s, description.options.fwhm_km_s.value_or(0.0)};
+    const PredictedProfile profile = profile_of(measurement, given);
+    if (profile.fwhm_km_s == 0.0)
+      throw InputError({"no line was fitted, so that the width of the model's lines is not known",
+                        "--line-width, as in '--line-width \"2 km/s\"'"});
+    add_predictions(sources_, profile, measurement);
+  }
+
+  std::string folder_;
+  LinePanelOptions options_;
+  std::vector<PredictedSource> sources_;
+};
 
 int threads_of(const ParsedCommand& command) {
   const std::string text = command.value("jobs");
@@ -130,8 +192,10 @@ ExitCode run_measure(const std::vector<std::string>& arguments, const Console& c
   if (console.owns_process) clean_up_when_stopped();
   const MeasureDescription description = description_of(command);
   check_name(command.value("out"));
-  const SpeciesMeasurement result = measured(description, threads_of(command), console);
+  const Drawing drawing(command);
+  SpeciesMeasurement result = measured(description, threads_of(command), console);
   const bool any = !result.table.rows.empty();
+  drawing.draw(result, description, console);
   if (any && !command.value("out").empty()) write_table(result.table, command.value("out"), console);
   if (command.flags.at("json")) {
     console.out << measurement_json(result);

@@ -215,7 +215,21 @@ class GroupMeasurement {
     panel.intensity = region_.data();
     panel.baseline = region_.baseline();
     if (fit && fit->trouble.empty()) panel.model = fit->model + panel.baseline;
+    for (const PlacedLine& line : context_.neighbours) add_mark(line, result, panel);
+    for (const PlacedLine& line : group_) {
+      if (line.request->rest_frequency_hz != result.rest_frequency_hz) add_mark(line, result, panel);
+    }
     return panel;
+  }
+
+  /// Where the source's velocity puts another line, if the panel reaches there.
+  void add_mark(const PlacedLine& line, const LineMeasurement& result, LinePanel& panel) const {
+    const double here =
+        velocity_km_s(frequency_at_hz(context_.options.vlsr_km_s, line.request->rest_frequency_hz),
+                      result.rest_frequency_hz);
+    if (here < panel.velocity_km_s.minCoeff() || here > panel.velocity_km_s.maxCoeff()) return;
+    const std::string species = line.request->tag == result.tag ? "" : line.request->tag + " ";
+    panel.marks.push_back({here, species + line.request->label});
   }
 
   const MeasurementContext& context_;

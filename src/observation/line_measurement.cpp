@@ -50,6 +50,9 @@ class Measurer {
     result_.spectrum = spectrum_.name;
     result_.object = spectrum_.object;
     result_.scale = spectrum_.scale;
+    result_.beam_fwhm_rad = spectrum_.beam_fwhm_rad;
+    result_.forward_efficiency = spectrum_.forward_efficiency;
+    result_.main_beam_efficiency = spectrum_.main_beam_efficiency;
     result_.window = about(options_.vlsr_km_s, options_.window_km_s.value_or(options_.search_km_s));
     place_all();
     if (!options_.window_km_s) find_window();

@@ -44,7 +44,8 @@ TEST_F(Help, OfPredictDescribesEveryOptionAndNoOther) {
 }
 
 TEST_F(Help, OfMeasureDescribesEveryOptionAndNoOther) {
-  std::set<std::string> expected = {"species", "out", "json", "jobs", "help"};
+  std::set<std::string> expected = {"species", "out", "panels", "figures",
+                                    "model",   "json", "jobs",   "help"};
   for (const MeasureOption& option : measure_option_table()) {
     std::string name = option.key;
     std::replace(name.begin(), name.end(), '_', '-');

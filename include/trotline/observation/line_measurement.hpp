@@ -74,12 +74,20 @@ struct GaussianLine {
   Measured peak;  ///< [K] or [Jy/beam]
 };
 
+/// Where another line lies in the velocities of a panel.
+struct PanelMark {
+  double velocity_km_s = 0.0;
+  std::string text;
+};
+
 /// The data about one line, for a drawing.
 struct LinePanel {
   Eigen::ArrayXd velocity_km_s;
   Eigen::ArrayXd intensity;  ///< as observed
   Eigen::ArrayXd baseline;
-  Eigen::ArrayXd model;  ///< of the fit, on the baseline; empty without a fit
+  Eigen::ArrayXd model;       ///< of the fit, on the baseline; empty without a fit
+  Eigen::ArrayXd prediction;  ///< of a model of the source, on the baseline; empty without one
+  std::vector<PanelMark> marks;
 };
 
 /// One line measured in one spectrum, and how.
@@ -120,6 +128,9 @@ struct SpectrumMeasurement {
   std::string spectrum;  ///< its name, object and scale, as Spectrum has them
   std::optional<std::string> object;
   IntensityScale scale = IntensityScale::main_beam;
+  std::optional<double> beam_fwhm_rad;
+  std::optional<double> forward_efficiency;
+  std::optional<double> main_beam_efficiency;
   std::vector<LineMeasurement> lines;  ///< one for each request with `measure`, in the order of the requests
   VelocityRange window;                ///< the common one
   double window_snr = 0.0;             ///< of the line that the window was found from; 0: it was not found
