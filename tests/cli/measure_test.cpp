@@ -127,6 +127,20 @@ TEST_F(Measure, ARunDescriptionMeasuresAndFitsInOneGo) {
   EXPECT_EQ(json["provenance"]["options"]["measure.window"], "7 km/s");
 }
 
+TEST_F(Measure, DrawsPanelsWithAModelOverThem) {
+  ASSERT_EQ(run(arguments({"--out", path("lines.ecsv")})).code, ExitCode::done);
+  ASSERT_EQ(run({"fit", path("lines.ecsv"), "--species", "CO", "--out", path("result"), "--figures", "none"}).code,
+            ExitCode::done);
+  const Outcome outcome = run(arguments(
+      {"--panels", path("view"), "--figures", "svg", "--model", path("result/result.json"), "--window", "7 km/s"}));
+  ASSERT_EQ(outcome.code, ExitCode::done) << outcome.err;
+  EXPECT_THAT(names_in("view"),
+              ::testing::ElementsAre("panels-data.tsv", "panels-text.tsv", "panels.gp", "panels.svg"));
+  EXPECT_THAT(run(arguments({"--model", path("result/result.json")})).err, HasSubstr("--panels"));
+  EXPECT_THAT(run(arguments({"--panels", path("view"), "--model", path("lines.ecsv")})).err,
+              AllOf(HasSubstr("lines.ecsv"), HasSubstr("result.json")));
+}
+
 struct WrongCall {
   std::vector<std::string> more;
   ExitCode code;
