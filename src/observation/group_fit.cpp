@@ -24,12 +24,15 @@ class GroupFit {
     if (!solution.converged) return result;
     const auto lines = static_cast<Eigen::Index>(group_.size());
     std::vector<LinearSum> parameters;
-    for (Eigen::Index k = 0; k < lines + 2; ++k) parameters.push_back(linear(solution.response.row(k)));
+    for (Eigen::Index k = 0; k < lines + 2; ++k) {
+      result.weights.push_back(spread(solution.response.row(k)));
+      parameters.push_back(region_.evaluate(result.weights.back(), result.weights.back()));
+    }
     for (Eigen::Index k = 0; k < lines; ++k) result.lines.push_back(line(solution, parameters, k));
     result.areas.assign(parameters.begin(), parameters.begin() + lines);
     for (Eigen::Index k = 0; k < lines; ++k)
       result.areas[static_cast<std::size_t>(k)].value = solution.area(k);
-    result.strongest_correlation = strongest(result.areas);
+    result.correlation = correlation_of(result.areas);
     result.model = Eigen::ArrayXd::Zero(region_.span().size());
     for (std::size_t i = 0; i < channels_.size(); ++i) {
       result.model(channels_[i] - region_.span().begin) = solution.model(static_cast<Eigen::Index>(i));
@@ -76,13 +79,13 @@ class GroupFit {
     return group_[static_cast<std::size_t>(line)].request->rest_frequency_hz;
   }
 
-  /// A parameter's response to the data of the fit, as a sum over the region.
-  [[nodiscard]] LinearSum linear(const Eigen::RowVectorXd& response) const {
+  /// A parameter's response to the data of the fit, as weights over the region.
+  [[nodiscard]] Eigen::VectorXd spread(const Eigen::RowVectorXd& response) const {
     Eigen::VectorXd weights = Eigen::VectorXd::Zero(region_.span().size());
     for (std::size_t i = 0; i < channels_.size(); ++i) {
       weights(channels_[i] - region_.span().begin) = response(static_cast<Eigen::Index>(i));
     }
-    return region_.evaluate(weights, weights);
+    return weights;
   }
 
   [[nodiscard]] double covariance(const LinearSum& a, const LinearSum& b) const {
@@ -111,15 +114,17 @@ class GroupFit {
     return result;
   }
 
-  [[nodiscard]] double strongest(const std::vector<LinearSum>& areas) const {
-    double largest = 0.0;
-    for (std::size_t i = 0; i < areas.size(); ++i) {
-      for (std::size_t k = 0; k < i; ++k) {
-        largest = std::max(largest,
-                           std::abs(covariance(areas[i], areas[k])) / (areas[i].sigma() * areas[k].sigma()));
+  [[nodiscard]] Eigen::MatrixXd correlation_of(const std::vector<LinearSum>& areas) const {
+    const auto n = static_cast<Eigen::Index>(areas.size());
+    Eigen::MatrixXd correlation = Eigen::MatrixXd::Identity(n, n);
+    for (Eigen::Index i = 0; i < n; ++i) {
+      for (Eigen::Index k = 0; k < i; ++k) {
+        const LinearSum& one = areas[static_cast<std::size_t>(i)];
+        const LinearSum& other = areas[static_cast<std::size_t>(k)];
+        correlation(i, k) = correlation(k, i) = covariance(one, other) / (one.sigma() * other.sigma());
       }
     }
-    return largest;
+    return correlation;
   }
 
   const MeasurementContext& context_;

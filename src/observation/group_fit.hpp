@@ -9,8 +9,9 @@ namespace trotline {
 struct FittedLines {
   std::vector<GaussianLine> lines;
   std::vector<LinearSum> areas;
+  std::vector<Eigen::VectorXd> weights;  ///< of the region's data in each area
+  Eigen::MatrixXd correlation;           ///< between the areas
   std::string trouble;
-  double strongest_correlation = 0.0;  ///< between the areas of two lines
   Eigen::ArrayXd model;                ///< over the region, without baseline
 };
 

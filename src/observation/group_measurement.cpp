@@ -89,42 +89,85 @@ class GroupMeasurement {
     result.gaussian = fit.lines[k];
   }
 
-  /// The smallest distance of two neighbouring lines of the group in km/s.
-  [[nodiscard]] double closest_km_s() const {
-    std::vector<double> frequencies;
-    for (const PlacedLine& line : group_) frequencies.push_back(line.request->rest_frequency_hz);
-    std::sort(frequencies.begin(), frequencies.end());
-    double closest = std::numeric_limits<double>::infinity();
-    for (std::size_t i = 1; i < frequencies.size(); ++i) {
-      closest = std::min(closest, kLight * (frequencies[i] - frequencies[i - 1]) / frequencies[i]);
-    }
-    return closest;
-  }
-
-  /// Lines closer than 0.7 of their width, or than the resolution, cannot be told apart.
-  [[nodiscard]] bool are_resolved(const std::optional<FittedLines>& fit) const {
+  /// Lines closer than this cannot be told apart: two channels, the resolution, 0.7 of the width.
+  [[nodiscard]] double least_distance_km_s(double fwhm_km_s) const {
     constexpr double kOfTheWidth = 0.7;
-    constexpr double kMostCorrelation = 0.9;
-    if (!fit || !fit->trouble.empty() || fit->strongest_correlation > kMostCorrelation) return false;
     double needed = 2.0 * region_.width_km_s(region_.window().begin, mean_rest_hz());
     if (context_.spectrum.resolution_hz)
       needed = std::max(needed, kLight * *context_.spectrum.resolution_hz / mean_rest_hz());
-    return closest_km_s() >= std::max(needed, kOfTheWidth * fit->lines[0].fwhm_km_s.value);
+    return std::max(needed, kOfTheWidth * fwhm_km_s);
+  }
+
+  [[nodiscard]] bool are_one(const FittedLines& fit, std::size_t i, std::size_t k, double least_km_s) const {
+    constexpr double kMostCorrelation = 0.9;
+    const double apart = kLight *
+                         std::abs(group_[i].request->rest_frequency_hz - group_[k].request->rest_frequency_hz) /
+                         mean_rest_hz();
+    const double correlation = fit.correlation(static_cast<Eigen::Index>(i), static_cast<Eigen::Index>(k));
+    return apart < least_km_s || std::abs(correlation) > kMostCorrelation;
+  }
+
+  /// Lines that cannot be told apart, in chains: for each line the first one of its chain.
+  [[nodiscard]] std::vector<std::size_t> chains(const FittedLines& fit) const {
+    const double least_km_s = least_distance_km_s(fit.lines[0].fwhm_km_s.value);
+    std::vector<std::size_t> first(group_.size());
+    for (std::size_t i = 0; i < group_.size(); ++i) {
+      first[i] = i;
+      for (std::size_t k = 0; k < i; ++k) {
+        if (!are_one(fit, i, k, least_km_s) || first[i] == first[k]) continue;
+        const std::size_t from = std::max(first[i], first[k]);
+        const std::size_t to = std::min(first[i], first[k]);
+        for (std::size_t j = 0; j <= i; ++j) first[j] = first[j] == from ? to : first[j];
+      }
+    }
+    return first;
   }
 
   void fill_several(std::vector<LineMeasurement>& results, const LinearSum& whole,
                     const std::optional<FittedLines>& fit) const {
-    if (are_resolved(fit)) {
-      for (std::size_t k = 0; k < results.size(); ++k) {
+    std::vector<std::size_t> first(group_.size(), 0);
+    if (fit && fit->trouble.empty()) first = chains(*fit);
+    const bool all_one = std::all_of(first.begin(), first.end(), [](std::size_t i) { return i == 0; });
+    if (all_one) return fill_blend(results, whole, "sum over the window of the blend", first, 0);
+    for (std::size_t k = 0; k < results.size(); ++k) {
+      if (std::count(first.begin(), first.end(), first[k]) == 1) {
         fill(results[k], fit->areas[k], "joint fit of Gaussians");
         attach(results[k], *fit, k);
+      } else if (first[k] == k) {
+        fill_blend(results, sum_of(*fit, first, k), "joint fit of Gaussians, sum of the blend", first, k);
       }
-      return;
     }
-    const std::string mark = fmt::format("{:.6f} GHz", mean_rest_hz() * 1e-9);
-    for (LineMeasurement& result : results) {
-      fill(result, whole, "sum over the window of the blend");
-      result.blend = mark;
+  }
+
+  /// The areas of a chain together: well known even where each of them is not.
+  [[nodiscard]] LinearSum sum_of(const FittedLines& fit, const std::vector<std::size_t>& first,
+                                 std::size_t chain) const {
+    Eigen::VectorXd weights = Eigen::VectorXd::Zero(region_.span().size());
+    double value = 0.0;
+    for (std::size_t i = 0; i < first.size(); ++i) {
+      if (first[i] != chain) continue;
+      weights += fit.weights[i];
+      value += fit.areas[i].value;
+    }
+    LinearSum sum = region_.evaluate(weights, weights);
+    sum.value = value;
+    return sum;
+  }
+
+  void fill_blend(std::vector<LineMeasurement>& results, const LinearSum& sum, const char* method,
+                  const std::vector<std::size_t>& first, std::size_t chain) const {
+    double frequency = 0.0;
+    double members = 0.0;
+    for (std::size_t i = 0; i < first.size(); ++i) {
+      if (first[i] != chain) continue;
+      frequency += group_[i].request->rest_frequency_hz;
+      members += 1.0;
+    }
+    const std::string mark = fmt::format("{:.6f} GHz", frequency / members * 1e-9);
+    for (std::size_t i = 0; i < first.size(); ++i) {
+      if (first[i] != chain) continue;
+      fill(results[i], sum, method);
+      results[i].blend = mark;
     }
   }
 

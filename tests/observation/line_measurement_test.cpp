@@ -255,6 +255,38 @@ TEST(GaussianLines, LinesThatCannotBeToldApartBecomeOneBlend) {
   EXPECT_FALSE(a.gaussian.has_value());
 }
 
+TEST(GaussianLines, OfAGroupOnlyWhatCannotBeToldApartIsBlended) {
+  std::mt19937_64 random(29);
+  simulation::Setup setup;
+  // Two lines 0.3 widths apart, a third four widths away: frequencies rise where velocities fall.
+  const std::vector<double> offsets = {0.0, -0.6, -8.0};
+  setup.lines = {{offsets[0], 60.0, 2.0}, {offsets[1], 40.0, 2.0}, {offsets[2], 50.0, 2.0}};
+  std::vector<LineRequest> requests;
+  for (std::size_t i = 0; i < 3; ++i) {
+    requests.push_back({std::string(1, static_cast<char>('a' + i)),
+                        kRestHz * (1.0 - offsets[i] / simulation::kLightKmS)});
+  }
+  std::vector<double> blend;
+  std::vector<double> alone;
+  constexpr int kSpectra = 300;
+  for (int i = 0; i < kSpectra; ++i) {
+    const auto measured =
+        measure_lines(simulation::spectrum(setup, random), requests, options_with_window(9.0)).lines;
+    ASSERT_FALSE(measured[0].blend.empty());
+    EXPECT_EQ(measured[0].blend, measured[1].blend);
+    EXPECT_EQ(measured[0].intensity, measured[1].intensity);
+    ASSERT_TRUE(measured[2].blend.empty());
+    ASSERT_TRUE(measured[2].gaussian.has_value());
+    blend.push_back((measured[0].intensity - 100.0) / measured[0].sigma());
+    alone.push_back((measured[2].intensity - 50.0) / measured[2].sigma());
+  }
+  // Four times the scatter of mean and standard deviation of the pulls, and 0.05 that errors may be off.
+  for (const auto& pulls : {blend, alone}) {
+    EXPECT_NEAR(statistics(pulls).mean, 0.0, 4.0 / std::sqrt(kSpectra) + 0.05);
+    EXPECT_NEAR(statistics(pulls).sigma, 1.0, 4.0 / std::sqrt(2.0 * kSpectra) + 0.05);
+  }
+}
+
 TEST(GaussianLines, LinesTooFaintForAFitBecomeOneBlend) {
   std::mt19937_64 random(12);
   simulation::Setup setup;
