@@ -47,6 +47,25 @@ BaselineFit finished(const BaselineData& data, Baseline baseline, std::vector<Ei
   return BaselineFit{std::move(baseline), std::move(channels), rms, mad_of(left)};
 }
 
+/// True for what lies beyond the limit. Three in a row on one side are no spike but a line that nobody listed:
+/// its wings below the limit go too, as far again on both sides as the run is long.
+std::vector<bool> outliers(const Eigen::ArrayXd& left, double limit) {
+  constexpr Eigen::Index kLeastRun = 3;
+  std::vector<bool> out(static_cast<std::size_t>(left.size()), false);
+  for (Eigen::Index begin = 0; begin < left.size();) {
+    Eigen::Index end = begin;
+    const bool above = left(begin) > 0.0;
+    while (end < left.size() && std::abs(left(end)) > limit && (left(end) > 0.0) == above) ++end;
+    const Eigen::Index run = end - begin;
+    const Eigen::Index wings = run >= kLeastRun ? run : 0;
+    for (Eigen::Index i = std::max<Eigen::Index>(0, begin - wings); i < std::min(left.size(), end + wings); ++i) {
+      if (run > 0) out[static_cast<std::size_t>(i)] = true;
+    }
+    begin = std::max(end, begin + 1);
+  }
+  return out;
+}
+
 /// Clips and refits until nothing changes.
 std::optional<BaselineFit> fit_order(const BaselineData& data, std::vector<Eigen::Index> channels,
                                      const NoiseCorrelation& correlation, int order) {
@@ -55,10 +74,11 @@ std::optional<BaselineFit> fit_order(const BaselineData& data, std::vector<Eigen
     Baseline baseline(data, channels, order);
     const Eigen::ArrayXd left = residuals(data, baseline, channels);
     const double mad = mad_of(left);
+    const std::vector<bool> out =
+        outliers(left, mad > 0.0 ? kClip * mad : std::numeric_limits<double>::infinity());
     std::vector<Eigen::Index> kept;
     for (std::size_t i = 0; i < channels.size(); ++i) {
-      if (std::abs(left(static_cast<Eigen::Index>(i))) <= kClip * mad || mad == 0.0)
-        kept.push_back(channels[i]);
+      if (!out[i]) kept.push_back(channels[i]);
     }
     if (kept.size() == channels.size() || pass == kMostPasses) {
       return finished(data, std::move(baseline), std::move(channels), correlation);

@@ -104,10 +104,10 @@ std::string panel_script(const PlacedPanel& panel, std::size_t index, const std:
   std::string script = margins(panel.box, size) + axis_settings("x", panel.velocity, "offset 0,0.55 ") +
                        axis_settings("y", panel.intensity, "offset 0.6,0 ") + furniture(panel);
   script += fmt::format(
-      R"(  plot "{0}-data.tsv" index {1} using 1:2 with histeps linewidth 0.6 linecolor rgb ink notitle, \
+      R"(  plot "{0}-data.tsv" index {1} using 1:5 with lines linewidth 2.4 linecolor rgb guide notitle, \
+    "" index {1} using 1:4 with lines linewidth 1.4 linecolor rgb line notitle, \
     "" index {1} using 1:3 with lines dashtype 2 linewidth 0.8 linecolor rgb soft notitle, \
-    "" index {1} using 1:5 with lines linewidth 2.2 linecolor rgb guide notitle, \
-    "" index {1} using 1:4 with lines linewidth 1.2 linecolor rgb line notitle
+    "" index {1} using 1:2 with histeps linewidth 0.5 linecolor rgb ink notitle
   unset object
   unset arrow
 )",
