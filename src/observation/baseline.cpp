@@ -47,6 +47,8 @@ BaselineFit finished(const BaselineData& data, Baseline baseline, std::vector<Ei
   return BaselineFit{std::move(baseline), std::move(channels), rms, mad_of(left)};
 }
 
+double limit_of(double mad) { return mad > 0.0 ? kClip * mad : std::numeric_limits<double>::infinity(); }
+
 /// True for what lies beyond the limit. Three in a row on one side are no spike but a line that nobody listed:
 /// its wings below the limit go too, as far again on both sides as the run is long.
 std::vector<bool> outliers(const Eigen::ArrayXd& left, double limit) {
@@ -66,6 +68,36 @@ std::vector<bool> outliers(const Eigen::ArrayXd& left, double limit) {
   return out;
 }
 
+bool has_feature(const std::vector<bool>& out) {
+  constexpr std::ptrdiff_t kMany = 9;  // what a run of three takes with its wings
+  return std::count(out.begin(), out.end(), true) >= kMany;
+}
+
+/// Residuals of a fit that lines nobody listed hardly pull: least squares with weights, first Huber's, then
+/// Tukey's biweight (Maronna, Martin & Yohai 2006, Robust Statistics, sections 2.2 and 5.5).
+Eigen::ArrayXd robust_residuals(const BaselineData& data, const std::vector<Eigen::Index>& channels, int order) {
+  constexpr int kPasses = 20;
+  constexpr double kBiweight = 4.685;
+  const auto n = static_cast<Eigen::Index>(channels.size());
+  Eigen::MatrixXd basis(n, order + 1);
+  Eigen::VectorXd y(n);
+  for (Eigen::Index k = 0; k < n; ++k) {
+    const Eigen::Index channel = channels[static_cast<std::size_t>(k)];
+    basis.row(k) = legendre_row(data.coordinate(channel), order);
+    y(k) = data.intensity(channel);
+  }
+  Eigen::ArrayXd weights = Eigen::ArrayXd::Ones(n);
+  Eigen::ArrayXd left = y.array();
+  for (int pass = 0; pass < kPasses; ++pass) {
+    const Eigen::MatrixXd weighted = weights.matrix().asDiagonal() * basis;
+    left = (y - basis * (weighted.transpose() * basis).ldlt().solve(weighted.transpose() * y)).array();
+    const Eigen::ArrayXd t = left.abs() / std::max(mad_of(left), std::numeric_limits<double>::min());
+    weights = pass < kPasses / 2 ? Eigen::ArrayXd(1.0 / t.max(1.0))
+                                 : Eigen::ArrayXd((1.0 - (t / kBiweight).square()).max(0.0).square());
+  }
+  return left;
+}
+
 /// Clips and refits until nothing changes.
 std::optional<BaselineFit> fit_order(const BaselineData& data, std::vector<Eigen::Index> channels,
                                      const NoiseCorrelation& correlation, int order) {
@@ -74,8 +106,11 @@ std::optional<BaselineFit> fit_order(const BaselineData& data, std::vector<Eigen
     Baseline baseline(data, channels, order);
     const Eigen::ArrayXd left = residuals(data, baseline, channels);
     const double mad = mad_of(left);
-    const std::vector<bool> out =
-        outliers(left, mad > 0.0 ? kClip * mad : std::numeric_limits<double>::infinity());
+    std::vector<bool> out = outliers(left, limit_of(mad));
+    if (pass == 0 && has_feature(out)) {
+      const Eigen::ArrayXd robust = robust_residuals(data, channels, order);
+      out = outliers(robust, limit_of(mad_of(robust)));
+    }
     std::vector<Eigen::Index> kept;
     for (std::size_t i = 0; i < channels.size(); ++i) {
       if (!out[i]) kept.push_back(channels[i]);
