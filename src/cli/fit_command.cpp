@@ -11,7 +11,6 @@
 #include <trotline/report/write_outputs.hpp>
 
 #include "command_line.hpp"
-#include "figure_option.hpp"
 #include "interrupts.hpp"
 #include "verbs.hpp"
 

@@ -16,7 +16,6 @@
 #include <trotline/report/model_file.hpp>
 
 #include "command_line.hpp"
-#include "figure_option.hpp"
 #include "interrupts.hpp"
 #include "verbs.hpp"
 

@@ -15,13 +15,6 @@ namespace {
 
 std::string number(double value) { return std::isfinite(value) ? fmt::format("{:.9g}", value) : "NaN"; }
 
-/// A text as the plotting program reads it back: quotes and backslashes as octal escapes.
-std::string quoted(const std::string& text) {
-  std::string result = "\"";
-  for (const char c : text) result += c == '\\' ? "\\134" : c == '"' ? "\\042" : std::string(1, c);
-  return result + "\"";
-}
-
 double value_at(const Eigen::ArrayXd& values, Eigen::Index i) {
   return values.size() > i ? values(i) : std::numeric_limits<double>::quiet_NaN();
 }
@@ -53,7 +46,7 @@ std::string text_file(const PanelPage& page) {
       "which there are fonts\n";
   for (const PlacedText& text : page.texts) {
     bytes += fmt::format("{}\t{}\t{}\t{}\t{}\n", static_cast<int>(text.role), number(text.x_mm),
-                         number(text.y_mm), quoted(text.text), quoted(drawable_text(text.text)));
+                         number(text.y_mm), figure_text(text.text), figure_text(drawable_text(text.text)));
   }
   return bytes;
 }

@@ -31,7 +31,7 @@ SpeciesMeasurement measured(const std::string& neighbour = "ZZ \"2\\n`date`") {
   SpeciesMeasurement result;
   result.spectra.push_back(measure_lines(spectrum,
                                          {{"1-0", simulation::kRestHz, "XY"},
-                                          {"5-4", simulation::kRestHz + 6e5, neighbour, false, {}}},
+                                          {"5", simulation::kRestHz + 6e5, neighbour, false, {}}},
                                          options));
   return result;
 }
@@ -55,8 +55,8 @@ TEST(LinePanels, TextFromOutsideStaysOutOfTheScript) {
   for (const char* text : {"date", "pond", "XY", "reed"}) EXPECT_THAT(script, Not(HasSubstr(text)));
   const std::string svg = read_file((folder.path() / "panels.svg").string());
   EXPECT_THAT(svg, HasSubstr("Invented pond"));
-  EXPECT_THAT(svg, HasSubstr("`date`"));
-  EXPECT_THAT(svg, HasSubstr("&lt;pond&gt;"));
+  EXPECT_THAT(svg, HasSubstr("ZZ \"2\\n`date`"));  // a digit behind a quote once became a part of its escape
+  EXPECT_THAT(svg, HasSubstr("&lt;pond>"));
 }
 
 TEST(LinePanels, ManyLinesFillSeveralPages) {
