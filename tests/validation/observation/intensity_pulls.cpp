@@ -93,7 +93,7 @@ S/N: the line's intensity over the error that the noise in its window gives.
 }  // namespace
 
 int main(int argc, char** argv) {
-  const int spectra = argc > 1 ? std::atoi(argv[1]) : 8000;
+  const int spectra = argc > 1 ? std::atoi(argv[1]) : 4000;
   std::mt19937_64 random(1);
   fmt::print(kHead, spectra, 1.0 / std::sqrt(spectra), 1.0 / std::sqrt(2.0 * spectra),
              100.0 * std::sqrt(0.683 * 0.317 / spectra));
