@@ -91,6 +91,9 @@ std::vector<std::string> assumptions_of(const Result& result, const RunOptions& 
 
 /// Options that a method would pass over in silence are refused.
 void require_method_can(const RunOptions& options) {
+  if (options.keep_samples && options.intervals != "posterior") {
+    throw InputError({"'samples' are asked for without a posterior", "intervals 'posterior' with them"});
+  }
   if (fits_intensities(options)) return;
   const auto refuse = [&](const std::string& what) {
     throw InputError({fmt::format("method '{}' cannot fit {}", options.method, what),
@@ -102,6 +105,7 @@ void require_method_can(const RunOptions& options) {
   if (options.isomers_apart) refuse("spin isomers apart");
   if (options.column_density_per_cm2) refuse("T with N given");
   if (options.temperature_range_k) refuse("T inside of a range");
+  if (options.intervals == "posterior") refuse("a posterior");
   if (options.temperature_prior_k) refuse("T with what is known beforehand");
   if (options.method == "line" && options.opacity != "automatic" && options.opacity != "thin") {
     throw InputError({fmt::format("method 'line' and opacity '{}' contradict each other", options.opacity),

@@ -98,7 +98,7 @@ void predict(PreparedLine& line, const ThermalState& state, double background_k,
     result.optical_depth = central_optical_depth(c, upper_column, state.temperature_k, result.fwhm_km_s);
   }
   const double correction =
-      opacity == Opacity::thin ? 1.0 : opacity_correction(opacity, result.optical_depth).factor;
+      opacity == Opacity::thin ? 1.0 : opacity_correction(opacity, std::min(result.optical_depth, kMostOpticalDepth)).factor;
   result.model_intensity_k_km_s =
       upper_column * intensity_per_upper_column_k_km_s_cm2(c) * result.filling * contrast / correction;
   result.residual_sigma = (result.intensity_k_km_s - result.model_intensity_k_km_s) /

@@ -191,6 +191,48 @@ void say_one_line(Result& result, const FittedModel& fitted) {
   }
 }
 
+std::string refusal_of(PosteriorStatus status) {
+  switch (status) {
+    case PosteriorStatus::done:
+      return {};
+    case PosteriorStatus::unbounded:
+      return "a parameter has no bounds";
+    case PosteriorStatus::too_short:
+      return "the walk did not come to the length that its autocorrelation asks for";
+    case PosteriorStatus::not_mixed:
+      return "the walkers disagree on where the density lies";
+  }
+  return {};
+}
+
+std::vector<double> numbers(const Eigen::VectorXd& vector) { return {vector.begin(), vector.end()}; }
+
+void add_posterior(Result& result, FittedModel& fitted, const RunOptions& options) {
+  const StateLayout& layout = fitted.setup.model->layout();
+  PosteriorOptions asked;
+  asked.ensemble.seed = options.seed;
+  asked.with_draws = options.keep_samples || layout.components > 1 || layout.isomers > 1;
+  fitted.posterior = posterior(*fitted.likelihood, fitted.fit, asked);
+  PosteriorSummary& summary = result.posterior;
+  summary.method = fitted.posterior->by_quadrature ? "quadrature" : "ensemble sampler";
+  summary.refusal = refusal_of(fitted.posterior->status);
+  if (!summary.refusal.empty()) {
+    result.warnings.push_back("the posterior gives no ranges: " + summary.refusal);
+  }
+  if (!fitted.posterior->sample) return;
+  const EnsembleSample& sample = *fitted.posterior->sample;
+  summary.seed = sample.seed;
+  summary.walkers = sample.walkers;
+  summary.ensembles = sample.ensembles;
+  summary.steps = sample.steps;
+  summary.acceptance = sample.acceptance;
+  summary.autocorrelation_steps = numbers(sample.autocorrelation_steps);
+  summary.effective_size = numbers(sample.effective_size);
+  summary.split_r_hat = numbers(sample.split_r_hat);
+  if (!options.keep_samples || !sample.usable()) return;
+  for (Eigen::Index k = 0; k < sample.draws.rows(); ++k) summary.draws.push_back(numbers(sample.draws.row(k)));
+}
+
 }  // namespace
 
 FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, const Species& species,
@@ -226,6 +268,7 @@ FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, 
   }
   set_status(result, fitted);
   if (result.status == Status::not_converged) return fitted;
+  if (options.intervals == "posterior") add_posterior(result, fitted, options);
   set_estimates(result, fitted, species, options, result.status != Status::done);
   if (result.status == Status::done) set_predictions(result, fitted, lines, options);
   return fitted;

@@ -1,11 +1,13 @@
 #pragma once
 
 #include <memory>
+#include <optional>
 #include <vector>
 
 #include <trotline/analysis/result.hpp>
 #include <trotline/analysis/run_options.hpp>
 #include <trotline/inference/likelihood_fit.hpp>
+#include <trotline/inference/posterior.hpp>
 #include <trotline/species/species.hpp>
 
 #include "model_setup.hpp"
@@ -18,6 +20,7 @@ struct FittedModel {
   ModelSetup setup;
   std::unique_ptr<IntensityLikelihood> likelihood;
   LikelihoodFit fit;
+  std::optional<Posterior> posterior = {};  ///< where the intervals are to come from it
 };
 
 /// The methods `likelihood` and `robust`: the most likely state of the source, given the intensities themselves.

@@ -35,6 +35,23 @@ double covariance_between(const FittedModel& fitted, int entry, int other) {
   return i < 0 || j < 0 ? 0.0 : covariance_of(fitted.fit)(i, j);
 }
 
+/// The standard deviation and equal-tailed ranges of the posterior about the best fit. An end that a bound of the
+/// parameter sets, and not the data, is left out.
+Estimate posterior_estimate(const Posterior& posterior, Eigen::Index k, Estimate estimate) {
+  if (!posterior.usable()) return estimate;
+  const MarginalDensity& marginal = posterior.marginals[static_cast<std::size_t>(k)];
+  estimate.error = marginal.sigma;
+  if (!marginal.cut_low) {
+    estimate.low68 = marginal.central68.low;
+    estimate.low95 = marginal.central95.low;
+  }
+  if (!marginal.cut_high) {
+    estimate.high68 = marginal.central68.high;
+    estimate.high95 = marginal.central95.high;
+  }
+  return estimate;
+}
+
 /// Value, error and intervals of one entry of the state, in its own scale (ln, or K for the background).
 Estimate entry_estimate(const FittedModel& fitted, int entry, const RunOptions& options) {
   Estimate estimate;
@@ -43,6 +60,7 @@ Estimate entry_estimate(const FittedModel& fitted, int entry, const RunOptions& 
   if (k < 0) return estimate;
   estimate.error = std::sqrt(covariance_of(fitted.fit)(k, k));
   if (options.intervals == "curvature") return plain_estimate(estimate.value, estimate.error);
+  if (fitted.posterior) return posterior_estimate(*fitted.posterior, k, estimate);
   const auto which = static_cast<int>(k);
   const Interval one = profile_interval(*fitted.likelihood, fitted.fit, which, 1.0);
   const Interval two = profile_interval(*fitted.likelihood, fitted.fit, which, kZ95);
@@ -60,6 +78,19 @@ Estimate as_range(Estimate estimate, bool several) {
   return estimate;
 }
 
+/// The same from draws of the posterior.
+Estimate drawn_sum(const FittedModel& fitted, const std::vector<int>& entries, double value) {
+  const Eigen::MatrixXd& all = fitted.posterior->sample->all;
+  Eigen::VectorXd sums = Eigen::VectorXd::Zero(all.cols());
+  for (const int entry : entries) {
+    const Eigen::Index k = free_index(fitted, entry);
+    if (k >= 0) sums += all.row(k).transpose().array().exp().matrix();
+  }
+  const MarginalDensity marginal = marginal_of(Eigen::VectorXd(sums.array().log().matrix()));
+  return {value, marginal.sigma, marginal.central68.low, marginal.central68.high, marginal.central95.low,
+          marginal.central95.high};
+}
+
 /// ln of a sum of column densities from their logarithms, with the error and the ranges of the curvature.
 Estimate ln_sum(const FittedModel& fitted, const std::vector<int>& entries) {
   double sum = 0.0;
@@ -70,7 +101,9 @@ Estimate ln_sum(const FittedModel& fitted, const std::vector<int>& entries) {
       variance += std::exp(fitted.fit.state[a] + fitted.fit.state[b]) / (sum * sum) * covariance_between(fitted, a, b);
     }
   }
-  return plain_estimate(std::log(sum), std::sqrt(variance));
+  const Estimate plain = plain_estimate(std::log(sum), std::sqrt(variance));
+  const bool drawn = fitted.posterior && fitted.posterior->sample && fitted.posterior->sample->usable();
+  return drawn ? drawn_sum(fitted, entries, plain.value) : plain;
 }
 
 /// Components by rising temperature.

@@ -192,13 +192,25 @@ RunOption make_number(const std::string& key, const std::string& example, const 
           }};
 }
 
+void set_seed(RunOptions& options, const std::string& text) {
+  const std::optional<long long> seed = parse_whole_number(text);
+  if (!seed || *seed < 0) throw InputError({fmt::format("'{}' is no seed", printable(text)), "a whole number from 0 on"});
+  options.seed = static_cast<std::uint64_t>(*seed);
+}
+
 /// The options of the estimators beyond the straight line.
 void add_model_options(std::vector<RunOption>& table) {
   table.push_back(make_words("opacity", "automatic",
                              "curve-of-growth, line-centre or thin; automatic: the curve of growth where lines have widths",
                              {"automatic", "curve-of-growth", "line-centre", "thin"}, &RunOptions::opacity));
-  table.push_back(make_words("intervals", "profile", "profile (of the likelihood) or curvature (at the best fit)",
-                             {"profile", "curvature"}, &RunOptions::intervals));
+  table.push_back(make_words("intervals", "profile",
+                             "profile (of the likelihood), curvature (at the best fit) or posterior",
+                             {"profile", "curvature", "posterior"}, &RunOptions::intervals));
+  table.push_back({"seed", "1", "where the draws from a posterior start: a whole number", set_seed,
+                   [](const RunOptions& o) { return std::to_string(o.seed); }});
+  table.push_back({"samples", "no", "keep draws from the posterior and write them: yes or no",
+                   [](RunOptions& o, const std::string& text) { o.keep_samples = yes_or_no(text); },
+                   [](const RunOptions& o) { return std::string(o.keep_samples ? "yes" : "no"); }});
   table.push_back({"components", "1", "how many components, each with its own T and N: 1 or 2",
                    [](RunOptions& o, const std::string& text) { o.components = one_of(text, {"1", "2"}) == "2" ? 2 : 1; },
                    [](const RunOptions& o) { return std::to_string(o.components); }});

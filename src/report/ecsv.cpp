@@ -131,25 +131,48 @@ void append_yaml(std::string& text, const Json& json, std::size_t indent) {
   }
 }
 
-std::string header_of(const std::vector<Column>& columns, const Result& result) {
+std::string header_of(const std::vector<Column>& columns) {
   std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
   for (const Column& column : columns) {
     const std::string unit = *column.unit != '\0' ? fmt::format("unit: {}, ", column.unit) : "";
     text += fmt::format("# - {{name: {}, {}datatype: {}, description: \"{}\"}}\n", column.name, unit,
                         column.datatype, column.description);
   }
+  return text;
+}
+
+/// The result under `meta`, without its lines.
+std::string meta_of(const Result& result) {
   Json meta = result_document(result);
   meta.erase("lines");
-  text += "# meta:\n";
+  std::string text = "# meta:\n";
   append_yaml(text, meta, 2);
   return text;
 }
 
 }  // namespace
 
+std::string samples_ecsv(const Result& result) {
+  std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
+  std::string names;
+  for (const FittedParameter& parameter : result.parameters) {
+    text += fmt::format("# - {{name: {}, datatype: float64, description: \"draw from the posterior\"}}\n", parameter.name);
+    names += (names.empty() ? "" : ",") + parameter.name;
+  }
+  text += meta_of(result) + names + "\n";
+  const std::size_t draws = result.posterior.draws.empty() ? 0 : result.posterior.draws.front().size();
+  for (std::size_t i = 0; i < draws; ++i) {
+    for (std::size_t k = 0; k < result.posterior.draws.size(); ++k) {
+      text += (k > 0 ? "," : "") + cell_of(result.posterior.draws[k][i]);
+    }
+    text += "\n";
+  }
+  return text;
+}
+
 std::string lines_ecsv(const Result& result) {
   const std::vector<Column> columns = all_columns();
-  std::string text = header_of(columns, result);
+  std::string text = header_of(columns) + meta_of(result);
   for (std::size_t i = 0; i < columns.size(); ++i) text += (i > 0 ? "," : "") + std::string(columns[i].name);
   text += "\n";
   for (const LineResult& line : result.lines) {

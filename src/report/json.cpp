@@ -126,6 +126,19 @@ Json json_of(const Provenance& provenance) {
           {"options", options}};
 }
 
+Json json_of(const PosteriorSummary& posterior) {
+  return {{"method", posterior.method},
+          {"refusal", posterior.refusal},
+          {"seed", posterior.seed},
+          {"walkers", posterior.walkers},
+          {"ensembles", posterior.ensembles},
+          {"steps", posterior.steps},
+          {"acceptance", posterior.acceptance},
+          {"autocorrelation_steps", posterior.autocorrelation_steps},
+          {"effective_size", posterior.effective_size},
+          {"split_r_hat", posterior.split_r_hat}};
+}
+
 Json json_of(const DiagramCurve& curve);  // its points are a list too
 
 template <class Item>
@@ -168,6 +181,7 @@ void add_details(Json& json, const Result& result) {
   json["parameters"] = list_of(result.parameters);
   json["parameter_covariance"] = result.parameter_covariance;
   json["alternatives"] = list_of(result.alternatives);
+  json["posterior"] = json_of(result.posterior);
 }
 
 void add_judgement(Json& json, const Result& result) {

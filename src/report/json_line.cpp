@@ -225,6 +225,15 @@ void get_provenance(const Json& json, Provenance& provenance) {
   }
 }
 
+/// Numbers, or null for what is not finite.
+void get_numbers(const Json& json, const char* key, std::vector<double>& numbers) {
+  const auto found = json.find(key);
+  if (found == json.end()) return;
+  for (const Json& cell : found->get_ref<const Json::array_t&>()) {
+    numbers.push_back(cell.is_null() ? kNotKnown : cell.get<double>());
+  }
+}
+
 /// Covariances are numbers or null.
 void get_covariance(const Json& json, std::vector<std::vector<double>>& covariance) {
   const auto found = json.find("parameter_covariance");
@@ -237,6 +246,21 @@ void get_covariance(const Json& json, std::vector<std::vector<double>>& covarian
   }
 }
 
+void get_posterior(const Json& json, PosteriorSummary& posterior) {
+  const auto found = json.find("posterior");
+  if (found == json.end()) return;
+  get(*found, "method", posterior.method);
+  get(*found, "refusal", posterior.refusal);
+  get(*found, "seed", posterior.seed);
+  get(*found, "walkers", posterior.walkers);
+  get(*found, "ensembles", posterior.ensembles);
+  get(*found, "steps", posterior.steps);
+  get(*found, "acceptance", posterior.acceptance);
+  get_numbers(*found, "autocorrelation_steps", posterior.autocorrelation_steps);
+  get_numbers(*found, "effective_size", posterior.effective_size);
+  get_numbers(*found, "split_r_hat", posterior.split_r_hat);
+}
+
 void get_details(const Json& json, Result& result) {
   get_list(json, "diagram_curves", result.diagram_curves, curve_of);
   get(json, "source_size_fit_arcsec", result.source_size_fit_arcsec);
@@ -244,6 +268,7 @@ void get_details(const Json& json, Result& result) {
   get_list(json, "parameters", result.parameters, parameter_of);
   get_covariance(json, result.parameter_covariance);
   get_list(json, "alternatives", result.alternatives, alternative_of);
+  get_posterior(json, result.posterior);
   get_list(json, "leave_one_out", result.leave_one_out, left_out_of);
   get_list(json, "subset_temperatures", result.subset_temperatures, subset_of);
   get_list(json, "models", result.models, model_of);

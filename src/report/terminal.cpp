@@ -304,12 +304,27 @@ void add_columns_at_temperatures(Page& page, const Result& result) {
   }
 }
 
+void add_posterior(Page& page, const Result& result) {
+  const PosteriorSummary& posterior = result.posterior;
+  if (posterior.method.empty()) return;
+  std::string text = "ranges from the posterior, by " + display_text(posterior.method);
+  if (!posterior.refusal.empty()) text = "no ranges from the posterior: " + display_text(posterior.refusal);
+  if (!posterior.effective_size.empty()) {
+    const double least = *std::min_element(posterior.effective_size.begin(), posterior.effective_size.end());
+    const double worst = *std::max_element(posterior.split_r_hat.begin(), posterior.split_r_hat.end());
+    text += fmt::format("; draws: seed {}, at least {} independent, split R-hat up to {}", posterior.seed,
+                        significant(least, 3, page.glyphs()), fixed_decimals(worst, 3, page.glyphs()));
+  }
+  page.entry("", text);
+}
+
 void add_answer(Page& page, const Result& result) {
   if (result.status != Status::done) page.line("  " + headline(result.status), kYellow);
   const std::string message = display_text(result.message);
   if (!message.empty()) page.entry("", message);
   add_estimates(page, result);
   add_components(page, result);
+  add_posterior(page, result);
   add_columns_at_temperatures(page, result);
   if (result.status == Status::not_thermal || result.status == Status::unbounded) {
     add_slope(page, result.diagram_line);

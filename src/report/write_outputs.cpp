@@ -8,6 +8,7 @@ namespace trotline {
 void write_outputs(const Result& result, OutputFolder& folder, const OutputOptions& options) {
   folder.write("result.json", result_json(result));
   folder.write("lines.ecsv", lines_ecsv(result));
+  if (!result.posterior.draws.empty()) folder.write("samples.ecsv", samples_ecsv(result));
   folder.write("report.txt", terminal_report(result, {.width = options.report_width}));
   if (options.formats.empty()) return;
   DiagramOptions diagram;

@@ -339,6 +339,46 @@ TEST(LikelihoodMethod, OptionsThatAMethodCannotHonourAreRefused) {
   EXPECT_THAT(refusal(species, table, options), HasSubstr("two components"));
 }
 
+TEST(LikelihoodMethod, ThePosteriorOfBrightLinesIsTheProfile) {
+  const Species species = rotor();
+  const double n = column_for(species, 1.0, 40.0, 8);
+  IntensityTable table = table_of(species, {{40.0, n}}, 8, 0.02);
+  std::mt19937_64 engine(21);
+  add_noise(table, engine);
+  RunOptions options = by("likelihood");
+  const Result profile = analyse(species, table, options);
+  options.intervals = "posterior";
+  const Result posterior = analyse(species, table, options);
+  EXPECT_EQ(posterior.posterior.method, "quadrature");
+  EXPECT_TRUE(posterior.posterior.draws.empty());
+  EXPECT_EQ(posterior.temperature_k.value, profile.temperature_k.value);
+  const double sigma = profile.temperature_k.error;
+  EXPECT_NEAR(posterior.temperature_k.error, sigma, 0.05 * sigma);
+  EXPECT_NEAR(posterior.temperature_k.low68, profile.temperature_k.low68, 0.1 * sigma);
+  EXPECT_NEAR(posterior.temperature_k.high95, profile.temperature_k.high95, 0.1 * sigma);
+  options.keep_samples = true;
+  options.seed = 5;
+  const Result drawn = analyse(species, table, options);
+  ASSERT_EQ(drawn.posterior.draws.size(), 2U);
+  EXPECT_EQ(drawn.posterior.seed, 5U);
+  double mean = 0.0;
+  for (const double ln_t : drawn.posterior.draws[1]) mean += ln_t / static_cast<double>(drawn.posterior.draws[1].size());
+  EXPECT_NEAR(std::exp(mean), profile.temperature_k.value, 0.2 * sigma);
+  EXPECT_EQ(analyse(species, table, options).posterior.draws, drawn.posterior.draws);
+  options.intervals = "profile";
+  EXPECT_THAT(refusal(species, table, options), HasSubstr("without a posterior"));
+}
+
+// A limit at an absurd height made the prediction ask for the opacity of more than 1e12 (December 2026).
+TEST(OpacityLineMethod, PredictsLinesOfAnyOpacity) {
+  const Species species = rotor();
+  IntensityTable table = table_of(species, {{40.0, 1e13}}, 5);
+  table.rows[4].is_limit = true;
+  table.rows[4].fwhm_km_s = 1e-14;
+  EXPECT_EQ(analyse(species, table, by("opacity-line")).status, Status::done);
+  EXPECT_NO_THROW((void)analyse(species, table, by("likelihood")));
+}
+
 TEST(OpacityLineMethod, ReturnsTheTruthOrSaysThatThereIsNoSolution) {
   const Species species = rotor();
   for (const double tau0 : {0.1, 1.0, 3.0, 10.0}) {

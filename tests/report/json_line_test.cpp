@@ -25,6 +25,7 @@ Result full_result() {
   result.parameters = {{"ln_temperature_k", 4.1, 0.05}, {"background_k", 2.8, kNotKnown}};
   result.parameter_covariance = {{0.0025, kNotKnown}, {kNotKnown, 0.01}};
   result.alternatives = {{60.0, 14.0, 8.5, 0.0}, {12.0, 17.0, kNotKnown, 3.0}};
+  result.posterior = {"ensemble sampler", "too short", 7, 32, 4, 1200, 0.4, {21.0, kNotKnown}, {4000.0, 9.0}, {1.0, 1.2}, {}};
   result.leave_one_out = {{"5(0)-4(0)", 1.5, 61.0, 3.0, 14.1}};
   result.subset_temperatures = {{"band", "90 to 110 GHz", 4, 60.0, 5.0}};
   result.models = {{"two components", 4, 120.0, 3.0, 5.0, 2.0, 0.4, true, "the lines do not hold it"}};

@@ -34,6 +34,23 @@ TEST(WriteOutputs, StagesEveryOutput) {
   fs::remove_all(target);
 }
 
+TEST(WriteOutputs, WritesDrawsWhereTheResultHoldsThem) {
+  const fs::path target = unused_path("draws");
+  {
+    Result result = invented_result();
+    result.parameters = {{"ln_temperature_k", 4.0, 0.1}, {"background_k", 2.7, 0.1}};
+    result.posterior.draws = {{4.1, 3.9, 4.0}, {2.6, 2.8, kNotKnown}};
+    OutputFolder folder(target);
+    write_outputs(result, folder, {.formats = {}});
+    EXPECT_THAT(folder.commit(), testing::Contains("samples.ecsv"));
+    const std::string text = read_file((target / "samples.ecsv").string());
+    EXPECT_TRUE(text.starts_with("# %ECSV 1.0\n"));
+    EXPECT_TRUE(text.ends_with("ln_temperature_k,background_k\n4.1,2.6\n3.9,2.8\n4.0,\n") ||
+                text.ends_with("ln_temperature_k,background_k\n4.1,2.6\n3.9,2.8\n4,\n"));
+  }
+  fs::remove_all(target);
+}
+
 TEST(WriteOutputs, LeavesTheFigureOutWhereNoneIsAsked) {
   const fs::path target = unused_path("plain");
   {

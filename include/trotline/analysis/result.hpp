@@ -1,5 +1,6 @@
 #pragma once
 
+#include <cstdint>
 #include <limits>
 #include <optional>
 #include <string>
@@ -165,6 +166,21 @@ struct DiagramCurve {
   std::vector<DiagramCurvePoint> points;
 };
 
+/// How intervals of a posterior were come by; draws only where they were asked for.
+struct PosteriorSummary {
+  std::string method;  ///< "quadrature", "ensemble sampler", or empty: no posterior was asked for
+  std::string refusal;  ///< why it gives no intervals; empty where it does
+  std::uint64_t seed = 0;
+  int walkers = 0;  ///< of each ensemble
+  int ensembles = 0;
+  int steps = 0;  ///< of each walker, burn-in left out
+  double acceptance = kNotKnown;
+  std::vector<double> autocorrelation_steps;  ///< in the order of Result::parameters, as the two below
+  std::vector<double> effective_size;
+  std::vector<double> split_r_hat;
+  std::vector<std::vector<double>> draws;  ///< one for each parameter; not part of result.json
+};
+
 struct Provenance {
   std::string version;
   std::string table_file;
@@ -206,6 +222,7 @@ struct Result {
   std::vector<FittedParameter> parameters;
   std::vector<std::vector<double>> parameter_covariance;  ///< rows and columns as parameters; NaN where not known
   std::vector<Alternative> alternatives;
+  PosteriorSummary posterior;
   std::vector<LineResult> lines;
   std::vector<ColumnAtTemperature> columns_at_temperatures;  ///< for Status::one_line
   std::vector<Check> checks;

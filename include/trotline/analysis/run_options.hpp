@@ -1,5 +1,6 @@
 #pragma once
 
+#include <cstdint>
 #include <functional>
 #include <optional>
 #include <string>
@@ -22,7 +23,9 @@ struct PriorKnowledge {
 struct RunOptions {
   std::string method = "line";          ///< line, opacity-line, likelihood, robust
   std::string opacity = "automatic";    ///< automatic, curve-of-growth, line-centre, thin; not for `line`
-  std::string intervals = "profile";    ///< profile, curvature
+  std::string intervals = "profile";    ///< profile, curvature, posterior
+  std::uint64_t seed = 1;               ///< of the draws from a posterior
+  bool keep_samples = false;            ///< draws of the posterior go into the result
   int components = 1;
   bool isomers_apart = false;
   bool compare_models = false;

@@ -15,4 +15,8 @@ namespace trotline {
 /// passes display_text(). Reference for the format: Astropy Proposal for Enhancement 6 (ECSV), version 1.0.
 [[nodiscard]] std::string lines_ecsv(const Result& result);
 
+/// The draws from the posterior in the same format, one row a draw, one column for each of Result::parameters, the
+/// rest of the result under `meta`. No row where no draws were kept.
+[[nodiscard]] std::string samples_ecsv(const Result& result);
+
 }  // namespace trotline
