@@ -47,13 +47,22 @@ ParsedCommand parse_command(const CommandSyntax& syntax, const std::vector<std::
   std::map<std::string, CLI::Option*> options;
   for (const std::string& name : syntax.values) options[name] = app.add_option("--" + name, given[name]);
   for (const std::string& name : syntax.flags) app.add_flag("--" + name, command.flags[name]);
-  if (!syntax.positional.empty()) app.add_option(syntax.positional, command.positional);
+  if (!syntax.positional.empty() && syntax.positional_repeats) {
+    app.add_option(syntax.positional, command.positionals);
+  } else if (!syntax.positional.empty()) {
+    app.add_option(syntax.positional, command.positional);
+  }
 
   std::vector<std::string> reversed(arguments.rbegin(), arguments.rend());
   try {
     app.parse(reversed);
   } catch (const CLI::ParseError& error) {
     throw UsageError(fmt::format("{}; see 'trotline {} --help'", printable(error.what()), syntax.verb));
+  }
+  if (syntax.positional_repeats && !command.positionals.empty()) {
+    command.positional = command.positionals.front();
+  } else if (!command.positional.empty()) {
+    command.positionals = {command.positional};
   }
   if (!app.remaining().empty()) refuse_extra(syntax, app.remaining().front());
   if (syntax.positional_required && command.positional.empty() && !command.flags["help"]) {

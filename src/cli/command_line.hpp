@@ -23,11 +23,13 @@ struct CommandSyntax {
   bool positional_required = false;
   std::vector<std::string> values;  ///< options that take a value, without "--"
   std::vector<std::string> flags;   ///< options that take none
+  bool positional_repeats = false;  ///< any number of positional arguments
 };
 
 /// A command line taken apart.
 struct ParsedCommand {
-  std::string positional;
+  std::string positional;                ///< the first one
+  std::vector<std::string> positionals;  ///< all of them, in the order given
   std::vector<std::pair<std::string, std::string>> values;  ///< in the order given
   std::map<std::string, bool> flags;
 

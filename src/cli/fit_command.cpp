@@ -50,6 +50,7 @@ RunDescription description_of(const ParsedCommand& command) {
     if (name == "out" || name == "figures") continue;
     if (name == "species") {
       run.species = value;
+      if (run.measure) run.measure->species = value;
       continue;
     }
     set_from_command_line(run.options, name, value);
@@ -66,11 +67,25 @@ OutputOptions output_options(const ParsedCommand& command) {
   return options;
 }
 
-void write_folder(const Result& result, const std::string& folder, const OutputOptions& options,
+/// A result, and the lines that were measured for it where the description says so.
+struct Fitted {
+  Result result;
+  std::string measured_ecsv;
+};
+
+Fitted fit(const RunDescription& run) {
+  const SpeciesLibrary library(SpeciesLibrary::standard_folders());
+  if (!run.measure) return {analyse(run, library), {}};
+  const SpeciesMeasurement measured = measure(*run.measure, library);
+  return {analyse(run, library, measured), to_ecsv(measured.table)};
+}
+
+void write_folder(const Fitted& fitted, const std::string& folder, const OutputOptions& options,
                   const Console& console) {
   OutputFolder output(folder);
   try {
-    write_outputs(result, output, options);
+    if (!fitted.measured_ecsv.empty()) output.write("measured.ecsv", fitted.measured_ecsv);
+    write_outputs(fitted.result, output, options);
   } catch (const SystemError& error) {
     if (options.formats.empty()) throw;
     throw SystemError(
@@ -87,8 +102,9 @@ ExitCode run_fit(const std::vector<std::string>& arguments, const Console& conso
   if (console.owns_process) clean_up_when_stopped();
   const OutputOptions outputs = output_options(command);
   const RunDescription run = description_of(command);
-  const Result result = analyse(run, SpeciesLibrary(SpeciesLibrary::standard_folders()));
-  if (!command.value("out").empty()) write_folder(result, command.value("out"), outputs, console);
+  const Fitted fitted = fit(run);
+  const Result& result = fitted.result;
+  if (!command.value("out").empty()) write_folder(fitted, command.value("out"), outputs, console);
   if (command.flags.at("json")) {
     console.out << result_json(result);
   } else {

@@ -21,7 +21,9 @@ struct Verb {
 };
 
 const std::vector<Verb>& verbs() {
-  static const std::vector<Verb> kVerbs = {{"fit", run_fit}, {"survey", run_survey_command}, {"predict", run_predict}, {"species", run_species}};
+  static const std::vector<Verb> kVerbs = {{"fit", run_fit},         {"measure", run_measure},
+                                           {"survey", run_survey_command}, {"predict", run_predict},
+                                           {"species", run_species}};
   return kVerbs;
 }
 

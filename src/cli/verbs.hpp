@@ -10,6 +10,7 @@ namespace trotline {
 [[nodiscard]] ExitCode run_fit(const std::vector<std::string>& arguments, const Console& console);
 [[nodiscard]] ExitCode run_survey_command(const std::vector<std::string>& arguments, const Console& console);
 [[nodiscard]] ExitCode run_predict(const std::vector<std::string>& arguments, const Console& console);
+[[nodiscard]] ExitCode run_measure(const std::vector<std::string>& arguments, const Console& console);
 [[nodiscard]] ExitCode run_species(const std::vector<std::string>& arguments, const Console& console);
 
 /// The help of a verb ("" for the program itself): its man page as text, made at build time.

@@ -119,7 +119,7 @@ class Walker {
     }
     if (number_ > 0) values = with_heap(values);
     if (is_table_) require_table(axes, bits);
-    return times(values, bits / 8, "BITPIX");
+    return times(values, bits / 8, lengths_.empty() ? "BITPIX" : fmt::format("NAXIS{}", lengths_.size()));
   }
 
   void read_kind() {

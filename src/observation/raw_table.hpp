@@ -32,7 +32,7 @@ struct Table {
   std::size_t header_line = 0;
   std::vector<Column> columns;
   std::vector<Row> rows;
-  std::string unit_place;  ///< where a unit is written in this format, for advice in messages
+  std::string unit_place;                  ///< where a unit is written in this format, for advice in messages
   Separator separator = Separator::comma;  ///< between the cells of a row of text
 };
 

@@ -4,17 +4,12 @@
 #include <trotline/observation/intensity_table.hpp>
 #include <trotline/physics/quantity.hpp>
 
+#include "out_columns.hpp"
+
 namespace trotline {
 namespace {
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
-
-struct OutColumn {
-  std::string name;
-  std::string datatype;
-  std::string unit;
-  std::vector<std::string> cells;
-};
 
 /// A unit in which a column may be written, and how many units of the row one of it is.
 struct OutUnit {
@@ -27,6 +22,13 @@ std::string quoted_where_needed(const std::string& text) {
   if (plain) return text;
   std::string quoted = "\"";
   for (const char c : text) quoted += c == '"' ? std::string("\"\"") : std::string(1, c);
+  return quoted + '"';
+}
+
+/// A scalar in YAML's double quotes, on one line.
+std::string yaml_quoted(const std::string& text) {
+  std::string quoted = "\"";
+  for (const char c : printable(text)) quoted += c == '"' || c == '\\' ? std::string{'\\', c} : std::string(1, c);
   return quoted + '"';
 }
 
@@ -53,6 +55,13 @@ std::optional<std::vector<std::string>> written_in(const std::vector<std::option
     cells.push_back(exact.value_or(""));
   }
   return cells;
+}
+
+template <class Get>
+std::string line_of(const std::vector<OutColumn>& columns, const Get& get) {
+  std::string text;
+  for (std::size_t i = 0; i < columns.size(); ++i) text += (i == 0 ? "" : ",") + get(columns[i]);
+  return text + "\n";
 }
 
 class Writer {
@@ -83,32 +92,14 @@ class Writer {
     for (const IntensityRow& row : rows_) {
       const std::optional<std::string> text = get(row);
       any = any || (text && !text->empty());
-      column.cells.push_back(quoted_where_needed(text.value_or("")));
+      column.cells.push_back(text.value_or(""));
     }
     if (any) columns_.push_back(std::move(column));
   }
 
-  [[nodiscard]] std::string ecsv() const {
-    std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
-    for (const OutColumn& column : columns_) {
-      const std::string unit = column.unit.empty() ? "" : fmt::format(", unit: {}", column.unit);
-      text += fmt::format("# - {{name: {}{}, datatype: {}}}\n", column.name, unit, column.datatype);
-    }
-    text += line([](const OutColumn& column) { return column.name; });
-    for (std::size_t i = 0; i < rows_.size(); ++i) {
-      text += line([i](const OutColumn& column) { return column.cells[i]; });
-    }
-    return text;
-  }
+  [[nodiscard]] std::vector<OutColumn> take() { return std::move(columns_); }
 
  private:
-  template <class Get>
-  [[nodiscard]] std::string line(const Get& get) const {
-    std::string text;
-    for (std::size_t i = 0; i < columns_.size(); ++i) text += (i == 0 ? "" : ",") + get(columns_[i]);
-    return text + "\n";
-  }
-
   const std::vector<IntensityRow>& rows_;
   std::vector<OutColumn> columns_;
 };
@@ -139,7 +130,7 @@ std::optional<std::string> name_of_scale(IntensityScale scale) {
 
 }  // namespace
 
-std::string to_ecsv(const IntensityTable& table) {
+std::vector<OutColumn> out_columns(const IntensityTable& table) {
   Writer writer(table.rows);
   const OutUnit kelvin_or_flux = intensity_unit(table);
   using Row = IntensityRow;
@@ -169,7 +160,24 @@ std::string to_ecsv(const IntensityTable& table) {
                  [](const Row& row) { return row.main_beam_efficiency; });
   writer.texts("blend", "string", [](const Row& row) { return row.blend; });
   writer.texts("note", "string", [](const Row& row) { return row.note; });
-  return writer.ecsv();
+  return writer.take();
+}
+
+std::string to_ecsv(const IntensityTable& table) {
+  const std::vector<OutColumn> columns = out_columns(table);
+  std::string text = "# %ECSV 1.0\n# ---\n# delimiter: ','\n# datatype:\n";
+  for (const OutColumn& column : columns) {
+    const std::string unit = column.unit.empty() ? "" : fmt::format(", unit: {}", column.unit);
+    text += fmt::format("# - {{name: {}{}, datatype: {}}}\n", column.name, unit, column.datatype);
+  }
+  if (!table.provenance.empty()) text += "# meta:\n";
+  for (const auto& [name, value] : table.provenance)
+    text += fmt::format("#   {}: {}\n", name, yaml_quoted(value));
+  text += line_of(columns, [](const OutColumn& column) { return column.name; });
+  for (std::size_t i = 0; i < table.rows.size(); ++i) {
+    text += line_of(columns, [i](const OutColumn& column) { return quoted_where_needed(column.cells[i]); });
+  }
+  return text;
 }
 
 }  // namespace trotline

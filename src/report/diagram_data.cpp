@@ -3,20 +3,13 @@
 #include <cmath>
 
 #include <trotline/report/diagram_files.hpp>
+#include <trotline/report/figure.hpp>
 #include <trotline/report/font_coverage.hpp>
 
 namespace trotline {
 namespace {
 
 std::string number(double value) { return std::isfinite(value) ? fmt::format("{:.9g}", value) : "NaN"; }
-
-/// A text as the plotting program reads it back. It looks for quotes before it undoes escapes, so a quote
-/// must not stand there as such, not even behind a backslash: both are written as octal escapes.
-std::string quoted(const std::string& text) {
-  std::string result = "\"";
-  for (const char c : text) result += c == '\\' ? "\\134" : c == '"' ? "\\042" : std::string(1, c);
-  return result + "\"";
-}
 
 std::string row(const std::vector<std::string>& cells) { return fmt::format("{}\n", fmt::join(cells, "\t")); }
 
@@ -64,7 +57,7 @@ NamedBytes labels_file(const DiagramLayout& layout) {
   for (const DiagramLabel& label : layout.labels) {
     bytes += row({label.has_leader ? "1" : "0", number(label.energy_k), number(label.ln_nu_gu),
                   number(label.leader.x0), number(label.leader.y0), number(label.leader.x1),
-                  number(label.leader.y1), quoted(label.text), quoted(drawable_text(label.text))});
+                  number(label.leader.y1), figure_text(label.text), figure_text(drawable_text(label.text))});
   }
   return {"diagram-labels.tsv", bytes};
 }
@@ -94,8 +87,8 @@ NamedBytes text_file(const DiagramLayout& layout) {
       "fonts\n";
   for (const PageText& text : layout.texts) {
     const std::string shown = page_text(text);
-    bytes += row({number(static_cast<int>(text.role)), number(text.x_mm), number(text.y_mm), quoted(shown),
-                  quoted(drawable_text(shown))});
+    bytes += row({number(static_cast<int>(text.role)), number(text.x_mm), number(text.y_mm), figure_text(shown),
+                  figure_text(drawable_text(shown))});
   }
   return {"diagram-text.tsv", bytes};
 }

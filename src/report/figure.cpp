@@ -158,6 +158,16 @@ std::string figure_terminals(const FigureSize& size) {
   return text;
 }
 
+std::string figure_text(const std::string& text) {
+  std::string result = "\"";
+  bool after_escape = false;
+  for (const char c : text) {
+    after_escape = c == '\\' || c == '"' || (after_escape && c >= '0' && c <= '7');
+    result += after_escape ? fmt::format("\\{:03o}", static_cast<unsigned char>(c)) : std::string(1, c);
+  }
+  return result + "\"";
+}
+
 std::vector<std::string> draw_figure(const FigureDrawing& drawing, const fs::path& folder) {
   if (drawing.formats.empty()) return {};
   run(drawing, folder);

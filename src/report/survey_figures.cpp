@@ -6,6 +6,7 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/report/display_text.hpp>
+#include <trotline/report/figure.hpp>
 #include <trotline/report/font_coverage.hpp>
 #include <trotline/report/process.hpp>
 #include <trotline/report/survey_figures.hpp>
@@ -229,16 +230,10 @@ const char* caption_of(SurveyFigure figure) {
 }
 
 std::string figure_texts(const std::vector<FigureText>& texts, std::size_t most_columns) {
-  // The drawing program looks for quotes before it undoes escapes: both are written as octal escapes.
-  const auto quoted = [](const std::string& text) {
-    std::string result = "\"";
-    for (const char c : text) result += c == '\\' ? "\\134" : c == '"' ? "\\042" : std::string(1, c);
-    return result + "\"";
-  };
   std::string bytes = "# number\ttext\ttext for which there are fonts\tx\ty\n";
   for (std::size_t i = 0; i < texts.size(); ++i) {
     const std::string text = shortened(display_text(texts[i].text), most_columns);
-    bytes += fmt::format("{}\t{}\t{}\t{:.9g}\t{:.9g}\n", i + 1, quoted(text), quoted(drawable_text(text)),
+    bytes += fmt::format("{}\t{}\t{}\t{:.9g}\t{:.9g}\n", i + 1, figure_text(text), figure_text(drawable_text(text)),
                          texts[i].x, texts[i].y);
   }
   return bytes;

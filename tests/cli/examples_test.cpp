@@ -1,5 +1,9 @@
 // The examples of the man pages are run as they stand there.
 
+#include <bit>
+#include <cstdint>
+#include <random>
+
 #include "program_fixture.hpp"
 
 namespace trotline {
@@ -51,6 +55,45 @@ std::vector<Example> examples_of(const std::string& page) {
   return examples;
 }
 
+/// A FITS image of one spectrum that covers CO 1-0 and 2-1 of an invented source at 5.2 km/s, noise included.
+std::string wide_spectrum() {
+  constexpr double kFirstHz = 115.0e9;
+  constexpr double kStepHz = 0.25e6;
+  constexpr int kChannels = 463000;
+  constexpr double kLightKmS = 299792.458;
+  std::string bytes;
+  const auto card = [&](const std::string& keyword, const std::string& value) {
+    bytes += fmt::format("{:<80}", fmt::format("{:<8}= {:>20}", keyword, value));
+  };
+  card("SIMPLE", "T");
+  card("BITPIX", "-32");
+  card("NAXIS", "1");
+  card("NAXIS1", std::to_string(kChannels));
+  card("CTYPE1", "'FREQ    '");
+  card("CUNIT1", "'Hz      '");
+  card("CRVAL1", fmt::format("{:.1f}", kFirstHz));
+  card("CDELT1", fmt::format("{:.1f}", kStepHz));
+  card("CRPIX1", "1.0");
+  card("SPECSYS", "'LSRK    '");
+  card("BUNIT", "'K       '");
+  bytes += fmt::format("{:<80}", "END");
+  bytes.resize((bytes.size() + 2879) / 2880 * 2880, ' ');
+  std::mt19937 random(1);
+  std::normal_distribution<double> normal(0.0, 0.02);
+  for (int i = 0; i < kChannels; ++i) {
+    double value = normal(random);
+    // Winnewisser et al. 1997, J. Mol. Spectrosc. 184, 468; brightness and width are invented.
+    for (const auto& [rest_hz, peak] : {std::pair{115271.2018e6, 1.6}, std::pair{230538.0e6, 3.4}}) {
+      const double v = kLightKmS * (1.0 - (kFirstHz + i * kStepHz) / rest_hz) - 5.2;
+      value += std::abs(v) < 20.0 ? peak * std::exp(-v * v / 2.0) : 0.0;
+    }
+    const auto bits = std::bit_cast<std::uint32_t>(static_cast<float>(value));
+    for (int shift = 24; shift >= 0; shift -= 8) bytes += static_cast<char>(bits >> shift);
+  }
+  bytes.resize((bytes.size() + 2879) / 2880 * 2880, '\0');
+  return bytes;
+}
+
 class ManPages : public ProgramTest {};
 
 TEST_F(ManPages, ExamplesRunAndPrintWhatTheyShow) {
@@ -60,10 +103,11 @@ TEST_F(ManPages, ExamplesRunAndPrintWhatTheyShow) {
   for (const char* name : {"my_molecule.yaml", "my_h2co.yaml"}) {
     std::filesystem::copy_file(std::string(TROTLINE_SOURCE_DIR) + "/configs/species/H2CO.yaml", folder_.path() / name);
   }
+  (void)folder_.file("co.fits", wide_spectrum());
   const auto before = std::filesystem::current_path();
   std::filesystem::current_path(folder_.path());
   int shown = 0;
-  for (const std::string page : {"trotline-fit", "trotline-species"}) {
+  for (const std::string page : {"trotline-fit", "trotline-measure", "trotline-species"}) {
     const auto examples = examples_of(page);
     EXPECT_GE(examples.size(), 3U) << page;
     for (const Example& example : examples) {

@@ -1,6 +1,7 @@
 #include <regex>
 #include <set>
 
+#include <trotline/analysis/measure_description.hpp>
 #include <trotline/analysis/prediction.hpp>
 #include <trotline/analysis/run_options.hpp>
 
@@ -42,6 +43,17 @@ TEST_F(Help, OfPredictDescribesEveryOptionAndNoOther) {
   EXPECT_EQ(options_in(run({"predict", "--help"}).out), expected);
 }
 
+TEST_F(Help, OfMeasureDescribesEveryOptionAndNoOther) {
+  std::set<std::string> expected = {"species", "out", "panels", "figures",
+                                    "model",   "json", "jobs",   "help"};
+  for (const MeasureOption& option : measure_option_table()) {
+    std::string name = option.key;
+    std::replace(name.begin(), name.end(), '_', '-');
+    expected.insert(name);
+  }
+  EXPECT_EQ(options_in(run({"measure", "--help"}).out), expected);
+}
+
 TEST_F(Help, OfEveryVerbIsReachedInEveryWay) {
   EXPECT_THAT(run({"--help"}).out, HasSubstr("fit"));
   EXPECT_THAT(run({"help"}).out, HasSubstr("species"));
@@ -51,7 +63,7 @@ TEST_F(Help, OfEveryVerbIsReachedInEveryWay) {
 }
 
 TEST_F(Help, FitsIntoNinetyColumns) {
-  for (const std::string verb : {"fit", "survey", "predict", "species"}) {
+  for (const std::string verb : {"fit", "measure", "survey", "predict", "species"}) {
     std::istringstream text(run({verb, "--help"}).out);
     for (std::string line; std::getline(text, line);) EXPECT_LE(line.size(), 90U) << line;
   }

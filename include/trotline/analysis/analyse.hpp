@@ -20,7 +20,12 @@ namespace trotline {
 [[nodiscard]] Result analyse(const Species& species, const IntensityTable& table, const RunOptions& options);
 
 /// Reads the species and the table of a description and analyses them; the table's fingerprint goes into the
-/// provenance. @throws InputError as SpeciesLibrary::find, read_intensity_table and analyse
+/// provenance. Where the description measures spectra, their lines make the table.
+/// @throws InputError as SpeciesLibrary::find, read_intensity_table, measure and analyse
 [[nodiscard]] Result analyse(const RunDescription& run, const SpeciesLibrary& library);
+
+/// The same for lines that were measured already by what `run.measure` says: how goes into the provenance.
+[[nodiscard]] Result analyse(const RunDescription& run, const SpeciesLibrary& library,
+                             const SpeciesMeasurement& measured);
 
 }  // namespace trotline

@@ -31,4 +31,7 @@ struct DiagramBatchFit {
 ///     a tenth of their size or more (test).
 [[nodiscard]] DiagramBatchFit fit_thermal_lines(const DiagramBatch& batch, int threads = 1);
 
+/// The same into arrays that are there from the batch before, so that nothing is allocated.
+void fit_thermal_lines(const DiagramBatch& batch, DiagramBatchFit& fit, int threads = 1);
+
 }  // namespace trotline

@@ -3,6 +3,7 @@
 #include <optional>
 #include <string>
 #include <string_view>
+#include <utility>
 #include <vector>
 
 #include <trotline/base/errors.hpp>
@@ -11,9 +12,9 @@ namespace trotline {
 
 /// The scale on which intensities are given.
 enum class IntensityScale {
-  main_beam,           ///< T_mb [K km/s]
-  antenna,             ///< T_A*, corrected for the atmosphere and rear losses [K km/s]
-  flux_per_beam        ///< velocity-integrated flux density per beam [Jy/beam km/s]
+  main_beam,     ///< T_mb [K km/s]
+  antenna,       ///< T_A*, corrected for the atmosphere and rear losses [K km/s]
+  flux_per_beam  ///< velocity-integrated flux density per beam [Jy/beam km/s]
 };
 
 /// One row: one measured line, or one member of a blend.
@@ -42,6 +43,8 @@ struct IntensityTable {
   std::string file;
   std::vector<IntensityRow> rows;
   std::vector<std::string> warnings;  ///< e.g. columns that were not understood and passed over
+  /// How it was made, as names and texts: written along, not read back.
+  std::vector<std::pair<std::string, std::string>> provenance = {};
 };
 
 enum class TableFormat { automatic, ecsv, csv, text, fits };
@@ -66,5 +69,9 @@ enum class TableFormat { automatic, ecsv, csv, text, fits };
 /// The table as ECSV text (version 1.0 of that format), with a unit for every column, in a form that
 /// parse_intensity_table reads back to the same bits. Columns that no row fills are left out.
 [[nodiscard]] std::string to_ecsv(const IntensityTable& table);
+
+/// The same as the bytes of a FITS file with one binary table, the provenance as HISTORY. Numbers are 64-bit
+/// and read back to the same bits; of texts FITS keeps printable ASCII, other characters become '?'.
+[[nodiscard]] std::string to_fits(const IntensityTable& table);
 
 }  // namespace trotline

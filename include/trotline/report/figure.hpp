@@ -42,6 +42,11 @@ struct FigureDrawing {
 /// width is a point in each.
 [[nodiscard]] std::string figure_terminals(const FigureSize& size);
 
+/// A text in double quotes as the drawing program reads it back from a data file. It looks for quotes before it
+/// undoes escapes, so a quote must not stand there as such, not even behind a backslash: both are written as
+/// octal escapes, and so is a digit that follows one, which would be taken for a part of it.
+[[nodiscard]] std::string figure_text(const std::string& text);
+
 /// Runs the script in its folder, once for all formats, and finishes the figures: fonts that may stand in,
 /// fixed dates, so that the same script gives the same bytes on the same machine.
 /// @return the names of the figures

@@ -2,7 +2,7 @@
 //
 //     interval_coverage [SOURCES] [FOLDER] [SCENARIO]
 //
-// SOURCES of each scenario (4000); FOLDER is docs/, whose validation.md has the table between two marks and
+// SOURCES of each scenario (1000); FOLDER is docs/, whose validation.md has the table between two marks and
 // whose figures/ gets the numbers that interval_coverage.gp draws; without FOLDER the table goes to standard
 // output.
 
@@ -97,7 +97,7 @@ void replace_between_marks(const std::string& path, const std::string& text) {
 }  // namespace
 
 int main(int count, char** arguments) {
-  const int sources = count > 1 ? std::stoi(arguments[1]) : 4000;
+  const int sources = count > 1 ? std::stoi(arguments[1]) : 1000;
   const auto all = scenarios();
   Output output;
   for (std::size_t i = 0; i < all.size(); ++i) {
