@@ -64,6 +64,7 @@ double crossing(Profile profile, double best, double bound, double step, double 
   for (int i = 0; i < kMostExpansions; ++i) {
     const bool last = direction * (best + direction * step - bound) >= 0.0;
     const double outside = last ? bound : best + direction * step;
+    if (!(direction * (outside - inside) > 0.0)) break;  // the best value lies on the bound already
     const double value = excess(outside);
     if (value >= 0.0) {
       std::uintmax_t most = 60;

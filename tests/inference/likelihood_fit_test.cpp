@@ -376,6 +376,20 @@ TEST(LikelihoodFit, RefusesProblemsThatAreNone) {
   EXPECT_THROW((void)fit_likelihood(IntensityLikelihood(model, good), no_start), DomainError);
 }
 
+// A best value on its bound left the search for that end without a span and ended the run (December 2026).
+TEST(ProfileInterval, HasNoEndBeyondABoundOnWhichTheBestValueLies) {
+  const ForwardModel model(ladder(6), partitions(), {});
+  const Eigen::VectorXd truth = simulated::state(30.0, 30.0);
+  LikelihoodProblem problem{exact_data(intensities(model, truth), 0.05), column_and_temperature_free(truth)};
+  const IntensityLikelihood likelihood(model, problem);
+  LikelihoodFit fit = fit_likelihood(likelihood);
+  for (const double bound : {likelihood.lower_bounds()[1], likelihood.upper_bounds()[1]}) {
+    fit.free[1] = bound;
+    const Interval interval = profile_interval(likelihood, fit, 1, 1.0);
+    EXPECT_TRUE(std::isnan(bound == likelihood.upper_bounds()[1] ? interval.high : interval.low));
+  }
+}
+
 TEST(ProfileInterval, IsSymmetricForGoodDataAndHoldsTheTruthAsOftenAsItSays) {
   const ForwardModel model(ladder(8), partitions(), {});
   const Eigen::VectorXd truth = simulated::state(ln_column_for(model, 0.5, 25.0), 25.0);
