@@ -113,7 +113,7 @@ class Ledger::Tables {
   }
 
   std::int64_t write_job(const JobRecord& job);
-  void write_result(std::int64_t job, const std::optional<Result>& result);
+  void write_result(std::int64_t job, const JobRecord& record);
 
   Database database;
   std::optional<Statement> recall;
@@ -340,8 +340,8 @@ std::int64_t Ledger::Tables::write_job(const JobRecord& record) {
   return id;
 }
 
-void Ledger::Tables::write_result(std::int64_t id, const std::optional<Result>& answer) {
-  if (!answer) {
+void Ledger::Tables::write_result(std::int64_t id, const JobRecord& record) {
+  if (!record.result) {
     if (!no_result) no_result.emplace(database, "DELETE FROM result WHERE job = ?1");
     no_result->bind(1, id);
     no_result->execute();
@@ -349,13 +349,15 @@ void Ledger::Tables::write_result(std::int64_t id, const std::optional<Result>& 
   }
   if (!result) result.emplace(database, "INSERT OR REPLACE INTO result (job, json) VALUES (?1, ?2)");
   result->bind(1, id);
-  result->bind(2, result_json_line(*answer));
+  const bool made = !record.result_json.empty();
+  const std::string json = made ? record.result_json : result_json_line(*record.result);
+  result->bind(2, json);
   result->execute();
 }
 
 void Ledger::write(const JobRecord& job) {
   tables_->begin();
-  tables_->write_result(tables_->write_job(job), job.result);
+  tables_->write_result(tables_->write_job(job), job);
 }
 
 void Ledger::commit() {

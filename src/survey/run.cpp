@@ -10,6 +10,7 @@
 
 #include <trotline/analysis/analyse.hpp>
 #include <trotline/base/version.hpp>
+#include <trotline/report/json_line.hpp>
 #include <trotline/survey/run.hpp>
 
 namespace trotline {
@@ -50,6 +51,7 @@ void analyse_into(JobRecord& record, const SurveyPlan& plan, const PlannedJob& j
   result.provenance.table_fingerprint = record.stamp.input_fingerprint;
   record.status = result.status == Status::done ? JobStatus::done : JobStatus::weak;
   record.message = result.message;
+  record.result_json = result_json_line(result);  // here, where many threads share the work
   record.result = std::move(result);
 }
 

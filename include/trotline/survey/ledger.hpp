@@ -44,6 +44,7 @@ struct JobRecord {
   bool again = false;   ///< to be done again at the next run, since a fault, not the input, is to blame
   std::string message;  ///< what went wrong, or what can be said where the data cannot answer
   std::optional<Result> result;
+  std::string result_json;  ///< result_json_line() of it, where somebody has made it already
   double seconds = 0.0;
 };
 
