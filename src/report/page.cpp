@@ -107,7 +107,7 @@ struct SurveyPage::Tally {
       failures.emplace_back(job.source + ", " + job.species, job.message);
     }
     if (job.result == nullptr) return;
-    if (!job.result->verdict.empty()) ++verdicts[job.result->verdict];
+    if (!job.result->verdict.empty()) ++verdicts[verdict_without_details(job.result->verdict)];
     if (job.status != "done") return;
     const double t = job.result->temperature_k.value;
     const double n = job.result->log10_column_density_cm2.value;

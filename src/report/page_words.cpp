@@ -6,6 +6,7 @@
 #include <cmath>
 
 #include <trotline/report/display_text.hpp>
+#include <trotline/report/page.hpp>
 #include <trotline/report/rounding.hpp>
 
 namespace trotline::page {
@@ -54,3 +55,9 @@ double quantile(const std::vector<double>& sorted, double share) {
 }
 
 }  // namespace trotline::page
+
+namespace trotline {
+
+std::string verdict_without_details(const std::string& verdict) { return verdict.substr(0, verdict.find(" (")); }
+
+}  // namespace trotline

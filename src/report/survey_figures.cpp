@@ -61,7 +61,7 @@ std::string frame(const char* x_name, const char* y_name) {
       "  set ytics nomirror out scale 0.55 textcolor rgb soft\n"
       "  set xlabel \"{}\" textcolor rgb ink enhanced\n"
       "  set ylabel \"{}\" textcolor rgb ink enhanced\n"
-      "  set lmargin 9\n  set rmargin 3\n  set tmargin 3\n  set bmargin 4\n",
+      "  set lmargin 10\n  set rmargin 3\n  set tmargin 3\n  set bmargin 4\n",
       x_name, y_name);
 }
 

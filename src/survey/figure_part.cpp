@@ -105,7 +105,7 @@ class FigurePart::Data {
   void add(const GatheredJob& gathered) {
     if (!gathered.result) return;
     const Result& result = *gathered.result;
-    if (!result.verdict.empty()) ++verdicts_[result.verdict];
+    if (!result.verdict.empty()) ++verdicts_[verdict_without_details(result.verdict)];
     for (const LineResult& line : result.lines) {
       if (!line.used || line.limit || !std::isfinite(line.residual_sigma)) continue;
       LineMoments& moments = lines_[{result.species, line.transition, line.frequency_mhz}];

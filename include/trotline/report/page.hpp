@@ -10,6 +10,10 @@
 
 namespace trotline {
 
+/// A verdict without what stands in brackets at its end, for counting: "one temperature does not describe the
+/// lines" of "... (failed: curvature)".
+[[nodiscard]] std::string verdict_without_details(const std::string& verdict);
+
 /// One job of a survey as the page shows it.
 struct PageJob {
   std::size_t id = 0;  ///< names the section, "#s12"
