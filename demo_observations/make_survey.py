@@ -3,9 +3,8 @@
 
     python3 demo_observations/make_survey.py FOLDER
 
-FOLDER/spectra/*.fits: one file a source, a FITS binary table with one spectrum a row; FOLDER/lines.csv: the
-integrated intensities that a careful person would take from them; FOLDER/survey.yaml: the description;
-FOLDER/truth.json. The same invented cloud and telescope as make_demo.py, whose formulas are used:
+FOLDER/spectra/*.fits: one file a source, a FITS binary table with one spectrum a row; FOLDER/survey.yaml: the
+description; FOLDER/truth.json. The same invented cloud and telescope as make_demo.py, whose formulas are used:
 they owe nothing to the program that reads the spectra. Standard library only; the seed is fixed.
 
 What a survey must find out for itself is built in, and listed in truth.json under `traps`: sources with two
@@ -107,8 +106,7 @@ def observe(rng, name, species, layers, size, width, vlsr):
         clean = brightness(species, j, layers, size, width, v)
         tilt = rng.gauss(0, 0.5) * noise
         data = [factor * y + tilt * x / v[-1] + rng.gauss(0, noise) for x, y in zip(v, clean)]
-        rows.append(dict(species=species, j=j, nu=nu, channel=channel, vlsr=vlsr, noise=noise, data=data, v=v,
-                         tilt=tilt))
+        rows.append(dict(nu=nu, channel=channel, vlsr=vlsr, data=data))
     return rows
 
 
@@ -154,20 +152,16 @@ def fits_bytes(name, rows):
     return (padded("".join(primary).encode(), b" ") + padded("".join(head).encode(), b" ") + padded(data, b"\0"))
 
 
-def measured(row, width):
-    """W over 1.5 widths to each side, the tilt known, and its error."""
-    inside = [y - row["tilt"] * x / row["v"][-1] for x, y in zip(row["v"], row["data"]) if abs(x) <= 1.5 * width]
-    return sum(inside) * row["channel"], row["noise"] * row["channel"] * math.sqrt(len(inside))
-
-
 DESCRIPTION = """# A survey of the Quiet Reach (invented)
-tables: lines.csv
+spectra: spectra/*.fits
 species: [HC3N, OCS, SiO, C18O, CS, H13CO+]
 defaults: {method: likelihood}
 exceptions:
   - {sources: "Kettle *", source_size: 25 arcsec}
   - {sources: "Drumlin *", source_size: 12 arcsec}
   - {sources: "Esker *", source_size: 6 arcsec}
+  # V_LSR of each source, a window of three line widths, and the width itself
+%s
 outputs:
   tables: [ecsv, fits, votable, latex]
 """
@@ -181,7 +175,7 @@ def main():
         "line %d-%d of %s" % (WRONG[1], WRONG[1] - 1, WRONG[0]): "%.0f %% too bright in every source" % (100 * (WRONG[2] - 1)),
         ", ".join(TWO_LAYERS): "two temperatures",
         "%s, %s" % ONE_LINE: "one line only"}}
-    table = ["source,species,transition,intensity [K km/s],intensity_error [K km/s],beam_fwhm [arcsec],fwhm [km/s]"]
+    exceptions = []
     for name, kinetic, size, width, vlsr in sources(rng):
         rows = []
         for species in UPPER:
@@ -192,12 +186,9 @@ def main():
             trap = name in TWO_LAYERS or species == WRONG[0] or (name, species) == ONE_LINE
             truth["jobs"].append(dict(source=name, species=species, temperature_k=t, column_density_cm2=n, trap=trap))
         (folder / "spectra" / ("%s.fits" % name)).write_bytes(fits_bytes(name, rows))
-        for row in rows:
-            w, sigma = measured(row, width)
-            table.append("%s,%s,%d-%d,%.6g,%.4g,%.2f,%.4g" % (name, row["species"], row["j"], row["j"] - 1, w, sigma,
-                                                            demo.beam_arcsec(row["nu"]), width))
-    (folder / "lines.csv").write_text("\n".join(table) + "\n")
-    (folder / "survey.yaml").write_text(DESCRIPTION)
+        exceptions.append("  - {sources: %s, vlsr: %.3f km/s, window: %.3f km/s, line_width: %.3f km/s}" %
+                          (name, vlsr, 3 * width, width))
+    (folder / "survey.yaml").write_text(DESCRIPTION % "\n".join(exceptions))
     (folder / "truth.json").write_text(json.dumps(truth, indent=1) + "\n")
 
 

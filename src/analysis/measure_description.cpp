@@ -104,6 +104,12 @@ SpeciesMeasurement measure(const MeasureDescription& description, const SpeciesL
   Confusion confusion;
   for (const std::string& name : description.other_species) confusion.species.push_back(library.find(name));
   confusion.local_oscillator_hz = description.local_oscillator_hz;
+  return measure(description, species, confusion, run);
+}
+
+SpeciesMeasurement measure(const MeasureDescription& description, const Species& species,
+                           const Confusion& confusion, const MeasurementRun& run) {
+  check(description);
   MeasurementOptions options = description.options;
   options.vlsr_km_s = *description.vlsr_km_s;
   const InputFiles files(description.inputs);

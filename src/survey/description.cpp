@@ -60,15 +60,17 @@ class Reader {
 
  private:
   void read_root(const YAML::Node& root) {
-    static const std::vector<std::string> kKeys = {"tables", "species", "defaults", "exceptions", "outputs"};
+    static const std::vector<std::string> kKeys = {"tables",   "spectra",    "species",
+                                                   "defaults", "exceptions", "outputs"};
     if (!root.IsMap()) {
       complaints_.add(Place{survey_.file, 1}, {"this is no survey description",
                                                "a YAML mapping with the keys 'tables' and 'species'"});
       return;
     }
+    has_spectra_ = root["spectra"].IsDefined();
     for (const YamlEntry& entry : entries_of(root, "the survey description", complaints_)) {
       given_.push_back(entry.key);
-      if (entry.key == "tables")
+      if (entry.key == "tables" || entry.key == "spectra")
         read_tables(entry);
       else if (entry.key == "species")
         read_species(entry);
@@ -81,7 +83,7 @@ class Reader {
       else
         complain_of_key(entry, "a survey description", kKeys, complaints_);
     }
-    require("tables", "the tables to read, as in 'tables: lines/*.csv'");
+    if (!has_spectra_) require("tables", "the tables to read, as in 'tables: lines/*.csv', or 'spectra'");
     require("species", "the species to analyse, as in 'species: [CO, 13CO]'");
     check_species_of_exceptions();
   }
@@ -110,7 +112,7 @@ class Reader {
   void add_pattern(const std::string& pattern, SurveyTables tables) {
     if (pattern == "-") {
       complaints_.add(tables.place,
-                      {"'-' stands for standard input, which cannot be read again", "the path of a table"});
+                      {"'-' stands for standard input, which cannot be read again", "the path of a file"});
       return;
     }
     tables.pattern = beside(survey_.file, pattern);
@@ -119,13 +121,13 @@ class Reader {
 
   void read_tables(const YamlEntry& entry) {
     if (entry.value.IsMap()) {
-      read_table_mapping(entry.value);
+      read_table_mapping(entry, entry.value);
     } else if (entry.value.IsSequence() && entry.value.size() > 0) {
       for (const YAML::Node& item : entry.value) {
         if (item.IsMap())
-          read_table_mapping(item);
+          read_table_mapping(entry, item);
         else if (item.IsSequence())
-          complaints_.add(item, {"a list stands in the list 'tables'", "a text or a mapping"});
+          complaints_.add(item, {fmt::format("a list stands in the list '{}'", entry.key), "a text or a mapping"});
         else
           read_plain_table({entry.key, item, complaints_.place_of(item)});
       }
@@ -136,27 +138,32 @@ class Reader {
 
   void read_plain_table(const YamlEntry& entry) {
     for (const std::string& pattern : texts_of(entry, complaints_)) {
-      add_pattern(pattern, {{}, {}, {}, complaints_.place_of(entry.value)});
+      add_pattern(pattern, {{}, {}, {}, complaints_.place_of(entry.value), entry.key == "spectra"});
     }
   }
 
-  void read_table_mapping(const YAML::Node& node) {
+  void read_table_mapping(const YamlEntry& list, const YAML::Node& node) {
     static const std::vector<std::string> kKeys = {"files", "species", "source"};
-    SurveyTables tables{{}, {}, {}, complaints_.place_of(node)};
+    SurveyTables tables{{}, {}, {}, complaints_.place_of(node), list.key == "spectra"};
     std::vector<std::string> files;
     bool has_files = false;
-    for (const YamlEntry& entry : entries_of(node, "an entry of 'tables'", complaints_)) {
+    const std::string where = fmt::format("an entry of '{}'", list.key);
+    for (const YamlEntry& entry : entries_of(node, where, complaints_)) {
       if (entry.key == "files") {
         has_files = true;
         files = texts_of(entry, complaints_);
       } else if (entry.key == "species" || entry.key == "source") {
         (entry.key == "species" ? tables.species : tables.source) = one_text(entry);
+      } else if (tables.is_spectra) {
+        const auto value = value_of(entry);
+        if (value && set_measuring(entry, *value)) tables.measuring.emplace_back(entry.key, *value);
       } else {
-        complain_of_key(entry, "an entry of 'tables'", kKeys, complaints_);
+        complain_of_key(entry, where, kKeys, complaints_);
       }
     }
     if (!has_files)
-      complaints_.add(node, {"this entry of 'tables' has no 'files'", "'files: lines/*.csv' in it"});
+      complaints_.add(node, {fmt::format("this entry of '{}' has no 'files'", list.key),
+                             tables.is_spectra ? "'files: spectra/*.fits' in it" : "'files: lines/*.csv' in it"});
     for (const std::string& pattern : files) add_pattern(pattern, tables);
   }
 
@@ -209,6 +216,34 @@ class Reader {
     }
   }
 
+  /// Tries one option of measuring; false, with a complaint, where it cannot be set.
+  bool set_measuring(const YamlEntry& entry, const std::string& value) {
+    MeasureDescription scratch;
+    scratch.inputs.resize(1);
+    try {
+      set_measure_option(scratch, entry.key, value);
+      return true;
+    } catch (const InputError& error) {
+      complaints_.add(is_measuring(entry.key) ? value_place(entry) : entry.place, error.complaint());
+      return false;
+    }
+  }
+
+  /// Sets an option where it belongs: to the fits, to the measuring of spectra, or to both.
+  void set_for_both(const YamlEntry& entry, const std::string& value, RunOptions& options, Settings* settings,
+                    Settings& measuring) {
+    const bool measures = has_spectra_ && is_measuring(entry.key);
+    if (measures && set_measuring(entry, value)) measuring.emplace_back(entry.key, value);
+    if (measures && !is_option(entry.key)) return;
+    if (set_option(entry, value, options) && settings != nullptr) settings->emplace_back(entry.key, value);
+  }
+
+  static bool is_measuring(const std::string& key) {
+    const auto& table = measure_option_table();
+    return std::any_of(table.begin(), table.end(),
+                       [&](const MeasureOption& option) { return option.key == key; });
+  }
+
   [[nodiscard]] Place value_place(const YamlEntry& entry) const {
     return entry.value.Mark().is_null() ? entry.place : complaints_.place_of(entry.value);
   }
@@ -221,7 +256,8 @@ class Reader {
 
   void read_defaults(const YamlEntry& defaults) {
     for (const YamlEntry& entry : entries_of(defaults.value, "'defaults'", complaints_)) {
-      if (const auto value = value_of(entry)) set_option(entry, *value, survey_.defaults);
+      if (const auto value = value_of(entry))
+        set_for_both(entry, *value, survey_.defaults, nullptr, survey_.measuring);
     }
   }
 
@@ -243,7 +279,7 @@ class Reader {
         chosen = true;
         (entry.key == "sources" ? exception.sources : exception.species) = texts_of(entry, complaints_);
       } else if (const auto value = value_of(entry)) {
-        if (set_option(entry, *value, scratch)) exception.settings.emplace_back(entry.key, *value);
+        set_for_both(entry, *value, scratch, &exception.settings, exception.measuring);
       }
     }
     if (complaints_.count() == errors_before) complain_of_nothing(node, exception, chosen);
@@ -254,7 +290,7 @@ class Reader {
     if (!chosen) {
       complaints_.add(node, {"this exception names neither sources nor species",
                              "'sources:' or 'species:' in it", "what holds for all belongs in 'defaults'"});
-    } else if (exception.settings.empty()) {
+    } else if (exception.settings.empty() && exception.measuring.empty()) {
       complaints_.add(node,
                       {"this exception sets no option", "a run option in it, as in 'source_size: 8 arcsec'"});
     }
@@ -310,6 +346,7 @@ class Reader {
   SurveyDescription survey_;
   YamlComplaints complaints_;
   std::vector<std::string> given_;
+  bool has_spectra_ = false;
 };
 
 }  // namespace
@@ -359,6 +396,21 @@ RunOptions options_for(const SurveyDescription& survey, const std::string& sourc
   }
   options.source = source;
   return options;
+}
+
+MeasureDescription measuring_for(const SurveyDescription& survey, const SurveyTables& spectra,
+                                 const std::string& source, const std::vector<std::string>& species_names) {
+  MeasureDescription measuring;
+  measuring.inputs.resize(1);  // takes the options of files; the paths come later
+  const auto set_all = [&](const Settings& settings) {
+    for (const auto& [key, value] : settings) set_measure_option(measuring, key, value);
+  };
+  set_all(survey.measuring);
+  set_all(spectra.measuring);
+  for (const SurveyException& exception : survey.exceptions) {
+    if (applies(exception, source, species_names)) set_all(exception.measuring);
+  }
+  return measuring;
 }
 
 }  // namespace trotline

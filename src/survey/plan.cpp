@@ -4,6 +4,7 @@
 #include <filesystem>
 #include <unordered_map>
 
+#include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
 #include <trotline/base/version.hpp>
 #include <trotline/survey/plan.hpp>
@@ -65,14 +66,14 @@ std::string difference(const std::string& before, const std::string& now) {
   return keys.empty() ? "options have changed" : "options have changed: " + listed(keys, 4);
 }
 
-std::string why_changed(const JobMemory& memory, const JobStamp& now) {
+std::string why_changed(const JobMemory& memory, const JobStamp& now, const char* input) {
   const JobStamp& before = memory.stamp;
-  if (before.input_fingerprint != now.input_fingerprint) return "its rows have changed";
+  if (before.input_fingerprint != now.input_fingerprint) return fmt::format("its {} have changed", input);
   if (before.options != now.options) return difference(before.options, now.options);
   if (before.species_fingerprint != now.species_fingerprint) return "the species' data have changed";
   if (before.version != now.version) return fmt::format("computed by version {}", before.version);
   if (before.table_file != now.table_file || before.table_lines != now.table_lines)
-    return "its rows stand elsewhere";
+    return fmt::format("its {} stand elsewhere", input);
   return memory.again ? "failed by a fault before" : "";
 }
 
@@ -133,6 +134,7 @@ class Planner {
 
   void read_table(const TableFile& file) {
     try {
+      if (file.entry->is_spectra) return add_spectra(file);
       DividedTable table(file.path);
       const auto index = static_cast<std::uint32_t>(plan_().tables.size());
       plan_().tables.push_back(std::move(table));
@@ -166,6 +168,29 @@ class Planner {
     }
   }
 
+  /// A job for every species that may be looked for; whether its lines are there, measuring will tell.
+  void add_spectra(const TableFile& file) {
+    const auto index = static_cast<std::uint32_t>(plan_().spectra.size());
+    const auto entry = static_cast<std::uint32_t>(file.entry - plan_().survey.tables.data());
+    plan_().spectra.push_back({file.path, fingerprint(read_file(file.path)), entry});
+    const auto only = file.entry->species ? names_.find(*file.entry->species) : std::nullopt;
+    if (file.entry->species && !only) passed_rows_[*file.entry->species] += 1;
+    for (std::uint32_t species = 0; species < plan_().species.size(); ++species) {
+      if (file.entry->species && only != species) continue;
+      PlannedJob job;
+      job.source = file.entry->source.value_or(source_named_by(file.path));
+      job.species = species;
+      job.spectra = {index};
+      add_job(std::move(job));
+    }
+  }
+
+  /// "Fen 3" of "spectra/Fen 3.fits.gz".
+  static std::string source_named_by(const std::string& path) {
+    const std::filesystem::path name = std::filesystem::path(path).filename();
+    return name.extension() == ".gz" ? name.stem().stem().string() : name.stem().string();
+  }
+
   struct SpeciesOfPart {
     std::uint32_t index = 0;
     std::string problem;
@@ -194,7 +219,13 @@ class Planner {
       return;
     }
     PlannedJob& first = plan_().jobs[place->second];
-    if (first.table == job.table) {
+    if (!first.spectra.empty() && !job.spectra.empty()) {
+      first.spectra.push_back(job.spectra.front());
+      if (plan_().spectra[first.spectra.front()].entry != plan_().spectra[job.spectra.front()].entry)
+        first.problem = "its spectra stand in several entries of 'spectra'; expected one, with a list of files";
+    } else if (first.spectra.empty() != job.spectra.empty()) {
+      first.problem = "it has rows in a table and spectra; expected one of them for a source and species";
+    } else if (first.table == job.table) {
       first.parts.insert(first.parts.end(), job.parts.begin(), job.parts.end());
       if (first.problem.empty()) first.problem = job.problem;
     } else {
@@ -212,7 +243,7 @@ class Planner {
     if (!memory) {
       job.reason = "new";
     } else {
-      job.reason = why_changed(*memory, stamp_of(plan_(), job));
+      job.reason = why_changed(*memory, stamp_of(plan_(), job), job.spectra.empty() ? "rows" : "spectra");
       job.moved = memory->position != static_cast<std::int64_t>(position);
     }
     for (std::size_t i = 0; i < request_.again.size(); ++i) {
@@ -236,14 +267,26 @@ class Planner {
       chosen[i] = applies(exceptions[i], job.source, names_.of(job.species));
       if (chosen[i]) used_exceptions_[i] = true;
     }
-    const auto [place, is_new] =
-        option_index_.emplace(chosen, static_cast<std::uint32_t>(plan_().option_sets.size()));
+    const SurveyTables* spectra =
+        job.spectra.empty() ? nullptr : &plan_().survey.tables[plan_().spectra[job.spectra.front()].entry];
+    const auto [place, is_new] = option_index_.emplace(
+        std::pair(chosen, spectra), static_cast<std::uint32_t>(plan_().option_sets.size()));
     if (is_new) {
       RunOptions options = options_for(plan_().survey, job.source, names_.of(job.species));
       options.source.reset();
       plan_().option_sets.push_back({options, options_text(options)});
+      if (spectra != nullptr) add_measuring(plan_().option_sets.back(), job, *spectra);
     }
     return place->second;
+  }
+
+  void add_measuring(OptionSet& set, const PlannedJob& job, const SurveyTables& spectra) {
+    set.measuring = measuring_for(plan_().survey, spectra, job.source, names_.of(job.species));
+    for (const auto& [key, value] : shown(*set.measuring)) set.text += fmt::format("measure {}: {}\n", key, value);
+    for (const std::string& name : set.measuring->other_species) {
+      set.confusion.species.push_back(request_.find_species(name));
+    }
+    set.confusion.local_oscillator_hz = set.measuring->local_oscillator_hz;
   }
 
   void warn_of_passed_rows() {
@@ -292,7 +335,7 @@ class Planner {
   PlannedSurvey result_;
   SpeciesNames names_;
   std::unordered_map<std::string, std::size_t> index_;
-  std::map<std::vector<bool>, std::uint32_t> option_index_;
+  std::map<std::pair<std::vector<bool>, const SurveyTables*>, std::uint32_t> option_index_;
   std::vector<bool> used_exceptions_;
   std::vector<bool> used_requests_;
   std::map<std::string, std::size_t> passed_rows_;
@@ -304,16 +347,35 @@ PlannedSurvey plan_survey(const SurveyDescription& survey, Ledger* ledger, const
   return Planner(survey, ledger, request).plan();
 }
 
-JobStamp stamp_of(const SurveyPlan& plan, const PlannedJob& job) {
-  JobStamp stamp;
-  const DividedTable& table = plan.tables[job.table];
+namespace {
+
+void stamp_rows(JobStamp& stamp, const DividedTable& table, const PlannedJob& job) {
   stamp.table_file = table.path();
   for (const std::uint32_t part : job.parts) {
     const TablePart& rows = table.parts()[part];
     stamp.table_lines += (stamp.table_lines.empty() ? "" : ", ") + lines_of(rows);
     stamp.input_fingerprint += rows.fingerprint;
   }
-  if (job.parts.size() > 1 || !job.problem.empty())
+}
+
+void stamp_spectra(JobStamp& stamp, const SurveyPlan& plan, const PlannedJob& job) {
+  for (const std::uint32_t index : job.spectra) {
+    const SpectraOfSource& file = plan.spectra[index];
+    stamp.table_file += (stamp.table_file.empty() ? "" : ", ") + file.path;
+    stamp.input_fingerprint += file.fingerprint;
+  }
+}
+
+}  // namespace
+
+JobStamp stamp_of(const SurveyPlan& plan, const PlannedJob& job) {
+  JobStamp stamp;
+  if (job.spectra.empty()) {
+    stamp_rows(stamp, plan.tables[job.table], job);
+  } else {
+    stamp_spectra(stamp, plan, job);
+  }
+  if (job.parts.size() > 1 || job.spectra.size() > 1 || !job.problem.empty())
     stamp.input_fingerprint = fingerprint(stamp.input_fingerprint + job.problem);
   stamp.species_fingerprint = plan.species[job.species]->file_fingerprint;
   stamp.options = plan.option_sets[job.options].text;

@@ -1,3 +1,4 @@
+#include <fmt/format.h>
 #include <tbb/global_control.h>
 #include <tbb/info.h>
 #include <tbb/parallel_pipeline.h>
@@ -9,6 +10,7 @@
 #include <unordered_set>
 
 #include <trotline/analysis/analyse.hpp>
+#include <trotline/analysis/measure_description.hpp>
 #include <trotline/base/version.hpp>
 #include <trotline/report/json_line.hpp>
 #include <trotline/survey/run.hpp>
@@ -25,8 +27,19 @@ double seconds_since(Clock::time_point start) {
   return std::chrono::duration<double>(Clock::now() - start).count();
 }
 
-/// The rows of a job. Rows of one species in two spellings stand in several parts.
-IntensityTable rows_of(const SurveyPlan& plan, const PlannedJob& job) {
+/// The lines of a job's species in its spectra.
+IntensityTable measured_rows(const SurveyPlan& plan, const PlannedJob& job) {
+  const OptionSet& set = plan.option_sets[job.options];
+  MeasureDescription description = *set.measuring;
+  description.inputs.resize(job.spectra.size(), description.inputs.front());
+  for (std::size_t i = 0; i < job.spectra.size(); ++i) {
+    description.inputs[i].path = plan.spectra[job.spectra[i]].path;
+  }
+  return measure(description, *plan.species[job.species], set.confusion).table;
+}
+
+/// The rows of a job in a table. Rows of one species in two spellings stand in several parts.
+IntensityTable table_rows(const SurveyPlan& plan, const PlannedJob& job) {
   const DividedTable& table = plan.tables[job.table];
   IntensityTable rows = table.read(job.parts.front());
   for (std::size_t i = 1; i < job.parts.size(); ++i) {
@@ -36,6 +49,11 @@ IntensityTable rows_of(const SurveyPlan& plan, const PlannedJob& job) {
   std::stable_sort(rows.rows.begin(), rows.rows.end(), [](const IntensityRow& a, const IntensityRow& b) {
     return a.line_number < b.line_number;
   });
+  return rows;
+}
+
+IntensityTable rows_of(const SurveyPlan& plan, const PlannedJob& job) {
+  IntensityTable rows = job.spectra.empty() ? table_rows(plan, job) : measured_rows(plan, job);
   // Names that the description gave to the rows, or spelled otherwise.
   for (IntensityRow& row : rows.rows) {
     row.source = job.source;
@@ -47,7 +65,14 @@ IntensityTable rows_of(const SurveyPlan& plan, const PlannedJob& job) {
 void analyse_into(JobRecord& record, const SurveyPlan& plan, const PlannedJob& job) {
   RunOptions options = plan.option_sets[job.options].options;
   options.source = job.source;
-  Result result = analyse(*plan.species[job.species], rows_of(plan, job), options);
+  const IntensityTable rows = rows_of(plan, job);
+  if (rows.rows.empty() && !job.spectra.empty()) {
+    record.status = JobStatus::weak;
+    record.message = fmt::format("its spectra hold no line of {} that can be measured",
+                                 plan.species[job.species]->name);
+    return;
+  }
+  Result result = analyse(*plan.species[job.species], rows, options);
   result.provenance.table_fingerprint = record.stamp.input_fingerprint;
   record.status = result.status == Status::done ? JobStatus::done : JobStatus::weak;
   record.message = result.message;

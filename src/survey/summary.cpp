@@ -22,6 +22,15 @@ std::string times(std::int64_t count, const char* one, const char* many) {
   return fmt::format("{} {}", count, count == 1 ? one : many);
 }
 
+/// "3 tables", "64 files of spectra", "1 table and 64 files of spectra".
+std::string inputs_text(const SurveyPlan& plan) {
+  const std::string spectra =
+      times(static_cast<std::int64_t>(plan.spectra.size()), "file of spectra", "files of spectra");
+  if (plan.tables.empty() && !plan.spectra.empty()) return spectra;
+  const std::string tables = times(static_cast<std::int64_t>(plan.tables.size()), "table", "tables");
+  return plan.spectra.empty() ? tables : tables + " and " + spectra;
+}
+
 /// "  12  new", a line each.
 std::string reasons_text(const SurveyPlan& plan) {
   const auto reasons = reasons_of(plan);
@@ -90,7 +99,7 @@ std::string plan_text(const SurveyPlan& plan, const std::optional<RunMemory>& la
   std::string text =
       fmt::format("{}: {} from {} with {}; {} to compute\n", plan.survey.file,
                   times(static_cast<std::int64_t>(plan.jobs.size()), "job", "jobs"),
-                  times(static_cast<std::int64_t>(plan.tables.size()), "table", "tables"),
+                  inputs_text(plan),
                   plan.species.size() == 1 ? "1 species" : fmt::format("{} species", plan.species.size()),
                   plan.to_compute);
   text += reasons_text(plan) + last_text(plan, last);

@@ -72,4 +72,9 @@ void set_input_option(SpectrumInput& input, const std::string& key, const std::s
 [[nodiscard]] SpeciesMeasurement measure(const MeasureDescription& description,
                                          const SpeciesLibrary& library, const MeasurementRun& run = {});
 
+/// The same for a species that is at hand; the names of species in the description do not count.
+/// @throws InputError  as above, but for species that are not found
+[[nodiscard]] SpeciesMeasurement measure(const MeasureDescription& description, const Species& species,
+                                         const Confusion& confusion, const MeasurementRun& run = {});
+
 }  // namespace trotline

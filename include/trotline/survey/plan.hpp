@@ -4,6 +4,7 @@
 #include <functional>
 #include <map>
 #include <memory>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -22,6 +23,7 @@ struct PlannedJob {
   std::uint32_t options = 0;  ///< index into SurveyPlan::option_sets
   std::vector<std::uint32_t>
       parts;            ///< indices into the table's parts; several where a species has two spellings
+  std::vector<std::uint32_t> spectra;  ///< indices into SurveyPlan::spectra; then `table` and `parts` say nothing
   std::string problem;  ///< why it cannot be analysed at all; empty: it can
   std::string reason;   ///< why it must be computed; empty: what the ledger holds still stands
   bool moved = false;   ///< the ledger has it, in another place of the survey
@@ -31,6 +33,15 @@ struct PlannedJob {
 struct OptionSet {
   RunOptions options;  ///< without the source
   std::string text;    ///< as JobStamp::options
+  std::optional<MeasureDescription> measuring = {};  ///< of spectra; one input without a path stands for all
+  Confusion confusion = {};                          ///< with the species that it names
+};
+
+/// A file of spectra of one source.
+struct SpectraOfSource {
+  std::string path;
+  std::string fingerprint;  ///< of the file
+  std::uint32_t entry = 0;  ///< index into SurveyDescription::tables
 };
 
 /// A survey ready to run.
@@ -38,6 +49,7 @@ struct SurveyPlan {
   SurveyDescription survey;
   std::vector<std::shared_ptr<const Species>> species;
   std::vector<DividedTable> tables;
+  std::vector<SpectraOfSource> spectra;
   std::vector<OptionSet> option_sets;
   std::vector<PlannedJob> jobs;  ///< by position
   std::vector<UnreadTable> unread_tables;
