@@ -1,11 +1,10 @@
-#include <trotline/analysis/analyse.hpp>
-
 #include <fmt/format.h>
 
 #include <cmath>
 #include <map>
 #include <numbers>
 
+#include <trotline/analysis/analyse.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/version.hpp>
 #include <trotline/physics/constants.hpp>
@@ -22,7 +21,7 @@ namespace {
 
 constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr double kStrikingSigma = 3.0;
-constexpr double kLeastPlainSnr = 5.0;      // below it the logarithm's bias sigma^2/2W^2 exceeds 2 %
+constexpr double kLeastPlainSnr = 5.0;  // below it the logarithm's bias sigma^2/2W^2 exceeds 2 %
 
 void warn_about_lines(Result& result, const std::vector<PreparedLine>& lines, const RunOptions& options) {
   std::vector<std::string> weak;
@@ -39,25 +38,28 @@ void warn_about_lines(Result& result, const std::vector<PreparedLine>& lines, co
     ++times[line.result.transition];
   }
   if (!weak.empty() && !fits_intensities(options)) {
-    result.warnings.push_back(fmt::format("below S/N {:g}, where the logarithm of an intensity is biased low by "
-                                          "half its squared relative error: {}",
-                                          kLeastPlainSnr, fmt::join(weak, ", ")));
+    result.warnings.push_back(
+        fmt::format("below S/N {:g}, where the logarithm of an intensity is biased low by "
+                    "half its squared relative error: {}",
+                    kLeastPlainSnr, fmt::join(weak, ", ")));
   }
   if (!negative.empty()) {
-    result.warnings.push_back(fmt::format("negative by more than {:g} of its errors, which noise does not do; look for "
-                                          "a baseline or a line of the reference position: {}",
-                                          kStrikingSigma, fmt::join(negative, ", ")));
+    result.warnings.push_back(
+        fmt::format("negative by more than {:g} of its errors, which noise does not do; look for "
+                    "a baseline or a line of the reference position: {}",
+                    kStrikingSigma, fmt::join(negative, ", ")));
   }
   for (const auto& [transition, count] : times) {
     if (count > 1) {
-      result.warnings.push_back(fmt::format("{} stands {} times in the table; each counts as a measurement",
-                                            transition, count));
+      result.warnings.push_back(
+          fmt::format("{} stands {} times in the table; each counts as a measurement", transition, count));
     }
   }
 }
 
 void warn_about_interval_ends(Result& result, const RunOptions& options) {
-  if (result.status != Status::done || result.temperature_fixed || !std::isnan(result.temperature_k.high95)) return;
+  if (result.status != Status::done || result.temperature_fixed || !std::isnan(result.temperature_k.high95))
+    return;
   result.warnings.push_back(fits_intensities(options)
                                 ? "within 95 % T has no upper bound in the range that was looked at"
                                 : "within 95 % the slope may be flat: T has no upper bound there");
@@ -164,7 +166,8 @@ Result analyse(const Species& species, const IntensityTable& table, const RunOpt
   result.provenance.species_file = species.file;
   result.provenance.species_fingerprint = species.file_fingerprint;
   result.provenance.constants = constants::kVintage;
-  for (const Citation& c : species.citations) result.provenance.data_sources.push_back(c.what + ": " + c.from);
+  for (const Citation& c : species.citations)
+    result.provenance.data_sources.push_back(c.what + ": " + c.from);
   result.provenance.options = shown(options);
   return result;
 }

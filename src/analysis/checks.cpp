@@ -66,9 +66,10 @@ Check limits_kept(const Result& result) {
   }
   if (limits == 0) return check;
   check.outcome = broken.empty() ? Outcome::pass : Outcome::fail;
-  const std::string most = fmt::format("the model comes to {:+.1f} sigma of a limit at the most (above it where positive)",
-                                       check.figure);
-  check.meaning = broken.empty() ? most : fmt::format("the model lies above the limit of {}", fmt::join(broken, ", "));
+  const std::string most = fmt::format(
+      "the model comes to {:+.1f} sigma of a limit at the most (above it where positive)", check.figure);
+  check.meaning =
+      broken.empty() ? most : fmt::format("the model lies above the limit of {}", fmt::join(broken, ", "));
   return check;
 }
 
@@ -86,8 +87,8 @@ Check largest_opacity(const Result& result, Opacity opacity) {
   const LineResult* most = most_opaque(result);
   if (most == nullptr) return check;
   check.figure = most->optical_depth;
-  check.meaning = fmt::format("largest optical depth at line centre, by this model: {:.2g} in {}", most->optical_depth,
-                              most->transition);
+  check.meaning = fmt::format("largest optical depth at line centre, by this model: {:.2g} in {}",
+                              most->optical_depth, most->transition);
   if (opacity != Opacity::thin) {
     check.outcome = Outcome::pass;
     check.meaning += "; the fit takes it into account";
@@ -98,9 +99,12 @@ Check largest_opacity(const Result& result, Opacity opacity) {
   return check;
 }
 
-std::string chance_text(double p) { return fmt::format("chance alone would give more with probability {:.2g}", p); }
+std::string chance_text(double p) {
+  return fmt::format("chance alone would give more with probability {:.2g}", p);
+}
 
-std::string transition_of_datum(const FittedModel& fitted, const std::vector<PreparedLine>& lines, int datum) {
+std::string transition_of_datum(const FittedModel& fitted, const std::vector<PreparedLine>& lines,
+                                int datum) {
   std::vector<std::string> names;
   for (const std::size_t row : fitted.setup.rows_of_datum[static_cast<std::size_t>(datum)]) {
     names.push_back(lines[row].result.transition);
@@ -119,21 +123,25 @@ Check goodness_of_fit(const LteCheck& from) {
 }
 
 Check curvature(const LteCheck& from) {
-  Check check{"curvature", from.figure, outcome_of(from.outcome), "a curve needs three energies and a line to spare"};
+  Check check{"curvature", from.figure, outcome_of(from.outcome),
+              "a curve needs three energies and a line to spare"};
   if (from.outcome == CheckOutcome::not_testable) return check;
   check.meaning = fmt::format("a term in E_u squared, in its errors; {}", chance_text(from.p_value));
   if (from.outcome == CheckOutcome::fail) {
-    check.meaning += from.figure > 0.0 ? "; high levels hold more than one temperature allows: a warmer component?"
-                                       : "; high levels hold less than one temperature allows: not thermalised?";
+    check.meaning += from.figure > 0.0
+                         ? "; high levels hold more than one temperature allows: a warmer component?"
+                         : "; high levels hold less than one temperature allows: not thermalised?";
   }
   return check;
 }
 
 Check outlier(const LteCheck& from, const FittedModel& fitted, const std::vector<PreparedLine>& lines) {
-  Check check{"outlying lines", from.figure, outcome_of(from.outcome), "no line can be held against the others"};
+  Check check{"outlying lines", from.figure, outcome_of(from.outcome),
+              "no line can be held against the others"};
   if (from.outcome == CheckOutcome::not_testable) return check;
-  check.meaning = fmt::format("largest residual over its expected scatter, in {}; {}",
-                              transition_of_datum(fitted, lines, from.data.front()), chance_text(from.p_value));
+  check.meaning =
+      fmt::format("largest residual over its expected scatter, in {}; {}",
+                  transition_of_datum(fitted, lines, from.data.front()), chance_text(from.p_value));
   return check;
 }
 
@@ -141,8 +149,8 @@ std::string subset_text(const std::vector<SubsetTemperature>& subsets, const std
   std::vector<std::string> texts;
   for (const SubsetTemperature& subset : subsets) {
     if (subset.division != division || std::isnan(subset.temperature_k)) continue;
-    texts.push_back(
-        fmt::format("{}: {:.3g} +/- {:.2g} K", subset.subset, subset.temperature_k, subset.temperature_error_k));
+    texts.push_back(fmt::format("{}: {:.3g} +/- {:.2g} K", subset.subset, subset.temperature_k,
+                                subset.temperature_error_k));
   }
   return fmt::format("{}", fmt::join(texts, ", "));
 }
@@ -165,7 +173,8 @@ Check trend(const std::string& name, const LteCheck& from, const char* why_not, 
   return check;
 }
 
-// ---- the fit that the checks look at -----------------------------------------------------------------------
+// ---- the fit that the checks look at
+// -----------------------------------------------------------------------
 
 /// The model that a method of lines in the diagram stands for, fitted to the intensities from its answer.
 FittedModel refitted(const Result& result, const std::vector<PreparedLine>& lines, const Species& species,
@@ -207,8 +216,8 @@ void set_critical_densities(Result& result, const std::vector<PreparedLine>& lin
   if (std::isnan(result.temperature_k.value)) return;
   bool outside = false;
   for (std::size_t i = 0; i < lines.size(); ++i) {
-    const auto density = critical_density_per_cm3(rates, species.transitions[lines[i].transition],
-                                                  result.temperature_k.value);
+    const auto density =
+        critical_density_per_cm3(rates, species.transitions[lines[i].transition], result.temperature_k.value);
     outside = outside || !density;
     result.lines[i].critical_density_cm3 = density.value_or(kNotKnown);
   }
@@ -235,13 +244,15 @@ Check critical_density(const Result& result, const RunOptions& options) {
   if (std::isnan(check.figure)) return check;
   check.outcome = above.empty() ? Outcome::pass : Outcome::fail;
   check.meaning = above.empty() ? "every line lies below its critical density"
-                                : fmt::format("the density given is below the critical one of {}: their levels need "
-                                              "not be thermal",
-                                              fmt::join(above, ", "));
+                                : fmt::format(
+                                      "the density given is below the critical one of {}: their levels need "
+                                      "not be thermal",
+                                      fmt::join(above, ", "));
   return check;
 }
 
-// ---- putting it together -----------------------------------------------------------------------------------
+// ---- putting it together
+// -----------------------------------------------------------------------------------
 
 LteReport lte_report(Result& result, const FittedModel& fitted, const std::vector<PreparedLine>& lines) {
   std::vector<std::size_t> first_rows;
@@ -252,11 +263,13 @@ LteReport lte_report(Result& result, const FittedModel& fitted, const std::vecto
   LteReport report = check_lte(*fitted.likelihood, fitted.fit, options);
   for (const LeaveOneOut& row : report.leave_one_out) {
     result.leave_one_out.push_back({transition_of_datum(fitted, lines, row.datum), row.standardised_residual,
-                                    row.temperature_k, row.temperature_sigma_k, row.ln_column / std::numbers::ln10});
+                                    row.temperature_k, row.temperature_sigma_k,
+                                    row.ln_column / std::numbers::ln10});
   }
   for (const SubsetFit& subset : report.subsets) {
     const LineDivision& division = divisions[static_cast<std::size_t>(subset.grouping)];
-    result.subset_temperatures.push_back({division.name, division.groups[static_cast<std::size_t>(subset.group)],
+    result.subset_temperatures.push_back({division.name,
+                                          division.groups[static_cast<std::size_t>(subset.group)],
                                           subset.data, subset.temperature_k, subset.temperature_sigma_k});
   }
   return report;
@@ -301,7 +314,8 @@ std::string verdict_of(const Result& result, const RunOptions& options) {
   bool subcritical = false;
   bool fit_testable = false;
   for (const Check& check : result.checks) {
-    fit_testable = fit_testable || (check.name == "goodness of fit" && check.outcome != Outcome::not_testable);
+    fit_testable =
+        fit_testable || (check.name == "goodness of fit" && check.outcome != Outcome::not_testable);
     if (check.outcome != Outcome::fail) continue;
     if (check.name == "critical density") {
       subcritical = true;
@@ -314,7 +328,8 @@ std::string verdict_of(const Result& result, const RunOptions& options) {
     return fmt::format("{} {} not describe the lines (failed: {})", model, verb, fmt::join(failed, ", "));
   }
   const Check is_set = temperature_set(result);
-  if (!fit_testable || !(result.temperature_fixed || is_set.outcome == Outcome::pass)) return "these lines cannot tell";
+  if (!fit_testable || !(result.temperature_fixed || is_set.outcome == Outcome::pass))
+    return "these lines cannot tell";
   return fmt::format("{} describe{} the lines{}", model, options.components > 1 ? "" : "s",
                      subcritical ? ", but at the density given it need not be that of the gas" : "");
 }

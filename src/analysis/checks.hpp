@@ -11,11 +11,11 @@
 
 namespace trotline {
 
-/// Fills Result::checks, leave_one_out, subset_temperatures, critical densities and Result::verdict: whether one
-/// temperature describes the lines, does not, or cannot be told.
+/// Fills Result::checks, leave_one_out, subset_temperatures, critical densities and Result::verdict: whether
+/// one temperature describes the lines, does not, or cannot be told.
 ///
-/// The checks are made on the intensities, by the model of the method (thin lines for `line`), whatever the method:
-/// one that did not fit intensities is fitted again from its own answer.
+/// The checks are made on the intensities, by the model of the method (thin lines for `line`), whatever the
+/// method: one that did not fit intensities is fitted again from its own answer.
 /// @param fitted  what a likelihood method left; without a likelihood for the others
 /// @throws InputError as read_collision_rates
 void check_assumptions(Result& result, const std::vector<PreparedLine>& lines, const Species& species,

@@ -34,9 +34,9 @@ void require_known_keys(const YAML::Node& root, const std::string& name) {
   for (const auto& entry : root) {
     const std::string key = entry.first.IsScalar() ? entry.first.Scalar() : "";
     if (std::find(keys.begin(), keys.end(), key) == keys.end()) {
-      throw InputError(place_of(name, entry.first), {fmt::format("'{}' is no key of a file of collision rates",
-                                                                 printable(key)),
-                                                     "one of: " + listed(keys, keys.size()), did_you_mean(key, keys)});
+      throw InputError(place_of(name, entry.first),
+                       {fmt::format("'{}' is no key of a file of collision rates", printable(key)),
+                        "one of: " + listed(keys, keys.size()), did_you_mean(key, keys)});
     }
   }
 }
@@ -44,8 +44,8 @@ void require_known_keys(const YAML::Node& root, const std::string& name) {
 std::string scalar(const YAML::Node& root, const std::string& key, const std::string& name) {
   const YAML::Node node = root[key];
   if (!node || !node.IsScalar() || node.Scalar().empty()) {
-    throw InputError(node ? place_of(name, node) : Place{name}, {fmt::format("'{}' is missing or no text", key),
-                                                                 fmt::format("'{}: ...'", key)});
+    throw InputError(node ? place_of(name, node) : Place{name},
+                     {fmt::format("'{}' is missing or no text", key), fmt::format("'{}: ...'", key)});
   }
   return node.Scalar();
 }
@@ -53,8 +53,8 @@ std::string scalar(const YAML::Node& root, const std::string& key, const std::st
 const YAML::Node list(const YAML::Node& parent, const std::string& key, const std::string& name) {
   const YAML::Node node = parent[key];
   if (!node || !node.IsSequence() || node.size() == 0) {
-    throw InputError(place_of(name, node ? node : parent), {fmt::format("'{}' is missing or no list", key),
-                                                            fmt::format("'{}: [...]'", key)});
+    throw InputError(place_of(name, node ? node : parent),
+                     {fmt::format("'{}' is missing or no list", key), fmt::format("'{}: [...]'", key)});
   }
   return node;
 }
@@ -63,7 +63,8 @@ double number(const YAML::Node& node, const std::string& name) {
   const std::string text = node.IsScalar() ? node.Scalar() : "";
   const std::optional<double> value = parse_number(text);
   if (!value || !std::isfinite(*value) || !(*value > 0.0)) {
-    throw InputError(place_of(name, node), {fmt::format("'{}' is no rate", printable(text)), "a number above zero"});
+    throw InputError(place_of(name, node),
+                     {fmt::format("'{}' is no rate", printable(text)), "a number above zero"});
   }
   return *value;
 }
@@ -78,7 +79,8 @@ std::vector<double> temperatures(const YAML::Node& root, const std::string& name
     }
     const bool rises = values.size() == 1 || values.back() > values[values.size() - 2];
     if (!(values.back() > 0.0) || !rises) {
-      throw InputError(place_of(name, node), {"the temperatures do not rise from above zero", "as [10 K, 20 K, 50 K]"});
+      throw InputError(place_of(name, node),
+                       {"the temperatures do not rise from above zero", "as [10 K, 20 K, 50 K]"});
     }
   }
   return values;
@@ -89,20 +91,22 @@ double rate_scale(const YAML::Node& root, const std::string& name) {
   const std::string unit = scalar(root, "rate_unit", name);
   if (unit == "cm3/s" || unit == "cm3 s-1") return 1.0;
   if (unit == "m3/s" || unit == "m3 s-1") return 1e6;
-  throw InputError(place_of(name, root["rate_unit"]),
-                   {fmt::format("'{}' is no unit of a rate coefficient", printable(unit)), "'cm3/s' or 'm3/s'"});
+  throw InputError(
+      place_of(name, root["rate_unit"]),
+      {fmt::format("'{}' is no unit of a rate coefficient", printable(unit)), "'cm3/s' or 'm3/s'"});
 }
 
-std::size_t level_of(const YAML::Node& entry, const char* key, const Species& species, const std::string& name) {
+std::size_t level_of(const YAML::Node& entry, const char* key, const Species& species,
+                     const std::string& name) {
   const std::string label = normalised_label(scalar(entry, key, name));
   std::vector<std::string> labels;
   for (std::size_t i = 0; i < species.levels.size(); ++i) {
     if (normalised_label(species.levels[i].label) == label) return i;
     if (labels.size() < 500) labels.push_back(species.levels[i].label);
   }
-  throw InputError(place_of(name, entry[key]), {fmt::format("{} has no level '{}'", species.name, printable(label)),
-                                                fmt::format("a label such as '{}'", labels.front()),
-                                                did_you_mean(label, labels)});
+  throw InputError(place_of(name, entry[key]),
+                   {fmt::format("{} has no level '{}'", species.name, printable(label)),
+                    fmt::format("a label such as '{}'", labels.front()), did_you_mean(label, labels)});
 }
 
 CollisionRates::Rate rate_of(const YAML::Node& entry, const Species& species, std::size_t count, double scale,
@@ -114,7 +118,8 @@ CollisionRates::Rate rate_of(const YAML::Node& entry, const Species& species, st
   rate.upper = level_of(entry, "upper", species, name);
   rate.lower = level_of(entry, "lower", species, name);
   if (!(species.levels[rate.upper].energy_k > species.levels[rate.lower].energy_k)) {
-    throw InputError(place_of(name, entry), {"the upper level does not lie above the lower one", "a downward rate"});
+    throw InputError(place_of(name, entry),
+                     {"the upper level does not lie above the lower one", "a downward rate"});
   }
   for (const auto& node : list(entry, "values", name)) rate.cm3_per_s.push_back(scale * number(node, name));
   if (rate.cm3_per_s.size() != count) {
@@ -139,7 +144,8 @@ double interpolated(const std::vector<double>& temperature_k, const std::vector<
 
 }  // namespace
 
-CollisionRates parse_collision_rates(const std::string& text, const std::string& name, const Species& species) {
+CollisionRates parse_collision_rates(const std::string& text, const std::string& name,
+                                     const Species& species) {
   const YAML::Node root = load(text, name);
   if (!root.IsMap()) throw InputError(Place{name, 1}, {"holds no mapping", "a file of collision rates"});
   require_known_keys(root, name);

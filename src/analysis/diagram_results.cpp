@@ -81,9 +81,10 @@ void set_partition(Result& result, const PartitionValue& value, const PartitionF
   result.partition_function_source = partition.description();
   constexpr double kWorthSaying = 1e-3;
   if (value.relative_error > kWorthSaying) {
-    result.warnings.push_back(fmt::format("Q({:.4g} K) may be off by {:.2g} %: the levels or the table of the "
-                                          "species file do not carry further",
-                                          result.temperature_k.value, 100.0 * value.relative_error));
+    result.warnings.push_back(
+        fmt::format("Q({:.4g} K) may be off by {:.2g} %: the levels or the table of the "
+                    "species file do not carry further",
+                    result.temperature_k.value, 100.0 * value.relative_error));
   }
 }
 
@@ -98,12 +99,14 @@ void predict(PreparedLine& line, const ThermalState& state, double background_k,
     result.optical_depth = central_optical_depth(c, upper_column, state.temperature_k, result.fwhm_km_s);
   }
   const double correction =
-      opacity == Opacity::thin ? 1.0 : opacity_correction(opacity, std::min(result.optical_depth, kMostOpticalDepth)).factor;
+      opacity == Opacity::thin
+          ? 1.0
+          : opacity_correction(opacity, std::min(result.optical_depth, kMostOpticalDepth)).factor;
   result.model_intensity_k_km_s =
       upper_column * intensity_per_upper_column_k_km_s_cm2(c) * result.filling * contrast / correction;
-  result.residual_sigma = (result.intensity_k_km_s - result.model_intensity_k_km_s) /
-                          std::hypot(result.intensity_error_k_km_s,
-                                     result.calibration_error * result.model_intensity_k_km_s);
+  result.residual_sigma =
+      (result.intensity_k_km_s - result.model_intensity_k_km_s) /
+      std::hypot(result.intensity_error_k_km_s, result.calibration_error * result.model_intensity_k_km_s);
   if (contrast > 0.0) result.ln_nu_gu = line.ln_thin - std::log(contrast) + std::log(correction);
 }
 
@@ -115,8 +118,8 @@ void set_diagram_line(Result& result, const ThermalLineFit& fit) {
   result.p_value = chi2_survival(fit.chi2, fit.dof);
 }
 
-void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines, const PartitionFunction& partition,
-                      const RunOptions& options, bool from_limits) {
+void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
+                      const PartitionFunction& partition, const RunOptions& options, bool from_limits) {
   const double background_k = options.background_k;
   std::vector<double> temperatures_k(std::begin(kListedTemperaturesK), std::end(kListedTemperaturesK));
   if (options.temperature_k) temperatures_k = {*options.temperature_k};
@@ -124,7 +127,8 @@ void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines, co
     if (t <= 1.05 * background_k || t < partition.lowest_k() || t > partition.highest_k()) continue;
     ColumnAtTemperature column{t, kNotKnown, kNotKnown, from_limits};
     for (const PreparedLine& line : lines) {
-      const bool serves = from_limits ? line.result.limit && line.result.intensity_k_km_s > 0.0 : line.result.used;
+      const bool serves =
+          from_limits ? line.result.limit && line.result.intensity_k_km_s > 0.0 : line.result.used;
       const double contrast = background_contrast(line.constants.frequency_hz, t, background_k);
       if (!serves || !(contrast > 0.0)) continue;
       const double n = std::exp(line.ln_thin - std::log(contrast) + partition.at(t).ln_q +
@@ -155,9 +159,9 @@ void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
 void require_usable_temperature(double temperature_k, double background_k, const Species& species) {
   const PartitionFunction& partition = *species.partition;
   if (temperature_k <= background_k) {
-    throw InputError({fmt::format("temperature: {:g} K is not above the background, {:g} K", temperature_k,
-                                  background_k),
-                      "a temperature at which the lines emit"});
+    throw InputError(
+        {fmt::format("temperature: {:g} K is not above the background, {:g} K", temperature_k, background_k),
+         "a temperature at which the lines emit"});
   }
   if (temperature_k < partition.lowest_k() || temperature_k > partition.highest_k()) {
     throw InputError({fmt::format("temperature: {:g} K is outside the range of Q(T)", temperature_k),

@@ -26,8 +26,8 @@ inline constexpr double kListedTemperaturesK[] = {5.0, 10.0, 20.0, 40.0, 75.0, 1
 [[nodiscard]] bool share_calibration(const LineResult& a, const LineResult& b, const RunOptions& options);
 
 /// The diagram of the lines `used`, filling corrected, background and opacity not.
-[[nodiscard]] DiagramData diagram_data(const std::vector<PreparedLine>& lines, const std::vector<std::size_t>& used,
-                                       const RunOptions& options);
+[[nodiscard]] DiagramData diagram_data(const std::vector<PreparedLine>& lines,
+                                       const std::vector<std::size_t>& used, const RunOptions& options);
 
 /// value -/+ sigma, and -/+ 1.96 sigma.
 [[nodiscard]] Estimate plain_estimate(double value, double sigma);
@@ -50,12 +50,12 @@ void predict(PreparedLine& line, const ThermalState& state, double background_k,
 void set_diagram_line(Result& result, const ThermalLineFit& fit);
 
 /// N, or its limit, at the given temperature or at a few: all that one line, or limits alone, can say.
-void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines, const PartitionFunction& partition,
-                      const RunOptions& options, bool from_limits);
+void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
+                      const PartitionFunction& partition, const RunOptions& options, bool from_limits);
 
 /// The status where no line is left to fit.
-void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines, const PartitionFunction& partition,
-                        const RunOptions& options);
+void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
+                        const PartitionFunction& partition, const RunOptions& options);
 
 /// @throws InputError where a given temperature lies below the background or outside the range of Q
 void require_usable_temperature(double temperature_k, double background_k, const Species& species);

@@ -99,8 +99,8 @@ Alternative alternative_of(const FittedModel& fitted, const Eigen::VectorXd& fre
     for (int i = 0; i < layout.isomers; ++i) column += std::exp(state[layout.ln_column(c, i)]);
   }
   const double size = std::exp(state[layout.ln_size(0)]);
-  return {std::exp(state[layout.ln_temperature(0)]), std::log10(column), std::isfinite(size) ? size : kNotKnown,
-          2.0 * excess_cost};
+  return {std::exp(state[layout.ln_temperature(0)]), std::log10(column),
+          std::isfinite(size) ? size : kNotKnown, 2.0 * excess_cost};
 }
 
 void say_several(Result& result, const FittedModel& fitted) {
@@ -114,9 +114,10 @@ void say_several(Result& result, const FittedModel& fitted) {
     texts.push_back(fmt::format("T = {:.4g} K with N = {:.3g} cm^-2", a.temperature_k,
                                 std::pow(10.0, a.log10_column_density_cm2)));
   }
-  result.message = fmt::format("{} answers describe the lines about as well (chi2 within 4): {}. A width, a size, a "
-                               "line of another opacity or energy would tell them apart",
-                               texts.size(), fmt::join(texts, "; "));
+  result.message = fmt::format(
+      "{} answers describe the lines about as well (chi2 within 4): {}. A width, a size, a "
+      "line of another opacity or energy would tell them apart",
+      texts.size(), fmt::join(texts, "; "));
 }
 
 void say_at_bound(Result& result, const FittedModel& fitted) {
@@ -129,12 +130,14 @@ void say_at_bound(Result& result, const FittedModel& fitted) {
     const auto& p = fitted.setup.problem.parameters[static_cast<std::size_t>(entry)];
     double edge = upper ? p.upper : p.lower;
     if (kind_of(entry, layout) != EntryKind::background) edge = std::exp(edge);
-    texts.push_back(fmt::format("{} ({} end, {:.3g})", name_of_entry(entry, fitted), upper ? "upper" : "lower", edge));
+    texts.push_back(
+        fmt::format("{} ({} end, {:.3g})", name_of_entry(entry, fitted), upper ? "upper" : "lower", edge));
   }
   result.status = too_hot ? Status::unbounded : Status::at_bound;
-  result.message = fmt::format("the likelihood still rises at the end of the range of {}: the ranges below are what "
-                               "the lines set",
-                               fmt::join(texts, ", "));
+  result.message = fmt::format(
+      "the likelihood still rises at the end of the range of {}: the ranges below are what "
+      "the lines set",
+      fmt::join(texts, ", "));
 }
 
 /// The status of a fit whose lines are detected and more than its parameters.
@@ -154,8 +157,9 @@ void set_status(Result& result, const FittedModel& fitted) {
     case FitStatus::at_bound:
       if (only_sizes_fill_the_beam(fitted)) {
         result.status = Status::done;
-        result.warnings.push_back("the best source size is the largest that is looked at: the source fills every "
-                                  "beam, and the lines set a lower limit of its size at most");
+        result.warnings.push_back(
+            "the best source size is the largest that is looked at: the source fills every "
+            "beam, and the lines set a lower limit of its size at most");
       } else {
         say_at_bound(result, fitted);
       }
@@ -183,9 +187,10 @@ void say_one_line(Result& result, const FittedModel& fitted) {
   const auto measured = fitted.likelihood->measured_count();
   result.status = Status::one_line;
   if (measured > 1 && fitted.fit.status == FitStatus::too_few_data) {
-    result.message = fmt::format("{} measurements for {} free parameters: no answer. N of one component is listed for "
-                                 "several temperatures",
-                                 measured, fitted.likelihood->free_count());
+    result.message = fmt::format(
+        "{} measurements for {} free parameters: no answer. N of one component is listed for "
+        "several temperatures",
+        measured, fitted.likelihood->free_count());
   } else {
     result.message = "no temperature; N is listed for several, or give the option 'temperature'";
   }
@@ -230,14 +235,16 @@ void add_posterior(Result& result, FittedModel& fitted, const RunOptions& option
   summary.effective_size = numbers(sample.effective_size);
   summary.split_r_hat = numbers(sample.split_r_hat);
   if (!options.keep_samples || !sample.usable()) return;
-  for (Eigen::Index k = 0; k < sample.draws.rows(); ++k) summary.draws.push_back(numbers(sample.draws.row(k)));
+  for (Eigen::Index k = 0; k < sample.draws.rows(); ++k)
+    summary.draws.push_back(numbers(sample.draws.row(k)));
 }
 
 }  // namespace
 
 FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, const Species& species,
                               const RunOptions& options) {
-  if (options.temperature_k) require_usable_temperature(*options.temperature_k, options.background_k, species);
+  if (options.temperature_k)
+    require_usable_temperature(*options.temperature_k, options.background_k, species);
   if (used_lines(lines).empty()) {
     say_nothing_to_fit(result, lines, *species.partition, options);
     return {};
@@ -247,7 +254,8 @@ FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, 
   fitted.likelihood = std::make_unique<IntensityLikelihood>(*fitted.setup.model, fitted.setup.problem);
   if (fitted.likelihood->measured_count() == 0) {
     result.status = Status::only_limits;
-    result.message = "no line is measured: at each temperature listed N stays below the limit beside it (95 %)";
+    result.message =
+        "no line is measured: at each temperature listed N stays below the limit beside it (95 %)";
     list_columns(result, lines, species, options, kind);
     return {};
   }
@@ -255,9 +263,10 @@ FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, 
   const double detected = detection(fitted);
   if (detected < kLeastDetection) {
     result.status = Status::only_limits;
-    result.message = fmt::format("no line is detected: all together stand out by {:.1f} sigma. At each temperature "
-                                 "listed N stays below the limit beside it (95 %)",
-                                 std::sqrt(std::max(0.0, detected)));
+    result.message = fmt::format(
+        "no line is detected: all together stand out by {:.1f} sigma. At each temperature "
+        "listed N stays below the limit beside it (95 %)",
+        std::sqrt(std::max(0.0, detected)));
     list_columns(result, lines, species, options, kind);
     return {};
   }

@@ -23,15 +23,16 @@ struct FittedModel {
   std::optional<Posterior> posterior = {};  ///< where the intervals are to come from it
 };
 
-/// The methods `likelihood` and `robust`: the most likely state of the source, given the intensities themselves.
+/// The methods `likelihood` and `robust`: the most likely state of the source, given the intensities
+/// themselves.
 ///
 /// Limits, blends, intensities at or below zero and shared calibration factors are data like others. Sets the
-/// status, the estimates with their intervals, components, parameters with their covariance, and what the model
-/// predicts for every line. Where the lines hold no answer, the status says which, and ranges, limits or a table
-/// of N against T say what they do hold.
+/// status, the estimates with their intervals, components, parameters with their covariance, and what the
+/// model predicts for every line. Where the lines hold no answer, the status says which, and ranges, limits
+/// or a table of N against T say what they do hold.
 /// @return the fit, for checks; its likelihood is empty where nothing was fitted
 /// @throws InputError as set_up_model and model_kind
-[[nodiscard]] FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, const Species& species,
-                                            const RunOptions& options);
+[[nodiscard]] FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines,
+                                            const Species& species, const RunOptions& options);
 
 }  // namespace trotline

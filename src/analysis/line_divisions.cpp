@@ -32,7 +32,8 @@ LineDivision by_name(const std::string& name, const std::vector<PreparedLine>& l
   division.groups.assign(names.begin(), names.end());
   for (const std::size_t row : rows) {
     const auto found = names.find(name_of_group(lines[row]));
-    division.group.push_back(found == names.end() ? -1 : static_cast<int>(std::distance(names.begin(), found)));
+    division.group.push_back(found == names.end() ? -1
+                                                  : static_cast<int>(std::distance(names.begin(), found)));
   }
   return division;
 }
@@ -46,8 +47,9 @@ LineDivision by_gaps(const std::string& name, const char* unit, const std::vecto
   std::vector<std::size_t> order(rows.size());
   std::iota(order.begin(), order.end(), 0U);
   std::erase_if(order, [&](std::size_t i) { return !(value_of(lines[rows[i]]) > 0.0); });
-  std::stable_sort(order.begin(), order.end(),
-                   [&](std::size_t a, std::size_t b) { return value_of(lines[rows[a]]) < value_of(lines[rows[b]]); });
+  std::stable_sort(order.begin(), order.end(), [&](std::size_t a, std::size_t b) {
+    return value_of(lines[rows[a]]) < value_of(lines[rows[b]]);
+  });
   double low = 0.0;
   double last = 0.0;
   for (const std::size_t i : order) {
@@ -76,7 +78,8 @@ bool parts_alike(const LineDivision& a, const LineDivision& b) {
 
 }  // namespace
 
-std::vector<LineDivision> line_divisions(const std::vector<PreparedLine>& lines, const std::vector<std::size_t>& rows) {
+std::vector<LineDivision> line_divisions(const std::vector<PreparedLine>& lines,
+                                         const std::vector<std::size_t>& rows) {
   const LineDivision all[] = {
       by_name("spin isomer", lines, rows, [](const PreparedLine& line) { return line.spin; }),
       by_name("K-ladder", lines, rows,
@@ -84,8 +87,10 @@ std::vector<LineDivision> line_divisions(const std::vector<PreparedLine>& lines,
                 const std::string k = ladder_of(line.upper_label);
                 return k.empty() ? k : "K = " + k;
               }),
-      by_gaps("band", "GHz", lines, rows, [](const PreparedLine& line) { return line.result.frequency_mhz / 1e3; }),
-      by_gaps("beam", "arcsec", lines, rows, [](const PreparedLine& line) { return line.result.beam_fwhm_arcsec; })};
+      by_gaps("band", "GHz", lines, rows,
+              [](const PreparedLine& line) { return line.result.frequency_mhz / 1e3; }),
+      by_gaps("beam", "arcsec", lines, rows,
+              [](const PreparedLine& line) { return line.result.beam_fwhm_arcsec; })};
   std::vector<LineDivision> divisions;
   for (const LineDivision& division : all) {
     const bool known = std::any_of(divisions.begin(), divisions.end(),

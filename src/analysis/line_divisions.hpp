@@ -14,9 +14,9 @@ struct LineDivision {
   std::vector<int> group;           ///< of each row that was asked for; below 0: in none
 };
 
-/// Spin isomers; K-ladders (K, or Ka, from the label of the upper level); bands and beams (lines whose frequencies,
-/// whose beams lie within 30 % of their neighbours). Divisions into fewer than two groups are left out, and so is
-/// one that parts the rows as an earlier one does.
+/// Spin isomers; K-ladders (K, or Ka, from the label of the upper level); bands and beams (lines whose
+/// frequencies, whose beams lie within 30 % of their neighbours). Divisions into fewer than two groups are
+/// left out, and so is one that parts the rows as an earlier one does.
 /// @param rows  indices into lines
 [[nodiscard]] std::vector<LineDivision> line_divisions(const std::vector<PreparedLine>& lines,
                                                        const std::vector<std::size_t>& rows);

@@ -34,8 +34,8 @@ void fill_done(Result& result, std::vector<PreparedLine>& lines, const DiagramDa
 }
 
 /// The temperature is given: N alone is fitted.
-void fit_column(Result& result, std::vector<PreparedLine>& lines, const DiagramData& data, const Species& species,
-                double temperature_k) {
+void fit_column(Result& result, std::vector<PreparedLine>& lines, const DiagramData& data,
+                const Species& species, double temperature_k) {
   const PartitionFunction& partition = *species.partition;
   require_usable_temperature(temperature_k, data.background_k, species);
   const ThermalLineFit fit = fit_thermal_line_at(data, temperature_k);
@@ -47,9 +47,9 @@ void say_not_thermal(Result& result, const ThermalLineFit& fit) {
   const double sigma = std::sqrt(fit.inverse_temperature_variance);
   const double steepest = fit.inverse_temperature_per_k + kZ95 * sigma;
   result.status = Status::not_thermal;
-  result.message =
-      fmt::format("the populations do not fall with energy: the slope is {:+.3g} +/- {:.2g} per K, no temperature",
-                  -fit.inverse_temperature_per_k, sigma);
+  result.message = fmt::format(
+      "the populations do not fall with energy: the slope is {:+.3g} +/- {:.2g} per K, no temperature",
+      -fit.inverse_temperature_per_k, sigma);
   if (steepest > 0.0) result.message += fmt::format("; T is above {:.3g} K (95 %)", 1.0 / steepest);
 }
 
@@ -80,7 +80,8 @@ void fit_both(Result& result, std::vector<PreparedLine>& lines, const DiagramDat
   } else if (fit.status == ThermalStatus::no_minimum) {
     result.status = Status::not_converged;
     result.message =
-        "the best temperature is that of the background, where lines vanish: these intensities fit no emission "
+        "the best temperature is that of the background, where lines vanish: these intensities fit no "
+        "emission "
         "from one temperature";
   } else if (t < partition.lowest_k() || t > partition.highest_k()) {
     say_outside_of_q(result, fit, partition);

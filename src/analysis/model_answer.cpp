@@ -24,7 +24,8 @@ Eigen::Index free_index(const FittedModel& fitted, int entry) {
 /// The exact curvature where it is positive; it heeds limits and outliers, which the expected one does not.
 const Eigen::MatrixXd& covariance_of(const LikelihoodFit& fit) {
   for (Eigen::Index k = 0; k < fit.covariance.rows(); ++k) {
-    if (std::isfinite(fit.covariance(k, k)) && !std::isfinite(fit.curvature_covariance(k, k))) return fit.covariance;
+    if (std::isfinite(fit.covariance(k, k)) && !std::isfinite(fit.curvature_covariance(k, k)))
+      return fit.covariance;
   }
   return fit.curvature_covariance;
 }
@@ -35,8 +36,8 @@ double covariance_between(const FittedModel& fitted, int entry, int other) {
   return i < 0 || j < 0 ? 0.0 : covariance_of(fitted.fit)(i, j);
 }
 
-/// The standard deviation and equal-tailed ranges of the posterior about the best fit. An end that a bound of the
-/// parameter sets, and not the data, is left out.
+/// The standard deviation and equal-tailed ranges of the posterior about the best fit. An end that a bound of
+/// the parameter sets, and not the data, is left out.
 Estimate posterior_estimate(const Posterior& posterior, Eigen::Index k, Estimate estimate) {
   if (!posterior.usable()) return estimate;
   const MarginalDensity& marginal = posterior.marginals[static_cast<std::size_t>(k)];
@@ -87,7 +88,11 @@ Estimate drawn_sum(const FittedModel& fitted, const std::vector<int>& entries, d
     if (k >= 0) sums += all.row(k).transpose().array().exp().matrix();
   }
   const MarginalDensity marginal = marginal_of(Eigen::VectorXd(sums.array().log().matrix()));
-  return {value, marginal.sigma, marginal.central68.low, marginal.central68.high, marginal.central95.low,
+  return {value,
+          marginal.sigma,
+          marginal.central68.low,
+          marginal.central68.high,
+          marginal.central95.low,
           marginal.central95.high};
 }
 
@@ -98,7 +103,8 @@ Estimate ln_sum(const FittedModel& fitted, const std::vector<int>& entries) {
   double variance = 0.0;
   for (const int a : entries) {
     for (const int b : entries) {
-      variance += std::exp(fitted.fit.state[a] + fitted.fit.state[b]) / (sum * sum) * covariance_between(fitted, a, b);
+      variance += std::exp(fitted.fit.state[a] + fitted.fit.state[b]) / (sum * sum) *
+                  covariance_between(fitted, a, b);
     }
   }
   const Estimate plain = plain_estimate(std::log(sum), std::sqrt(variance));
@@ -119,7 +125,8 @@ std::vector<int> order_of_components(const FittedModel& fitted) {
 
 std::vector<int> columns_of_component(const StateLayout& layout, int component) {
   std::vector<int> entries;
-  for (int isomer = 0; isomer < layout.isomers; ++isomer) entries.push_back(layout.ln_column(component, isomer));
+  for (int isomer = 0; isomer < layout.isomers; ++isomer)
+    entries.push_back(layout.ln_column(component, isomer));
   return entries;
 }
 
@@ -167,14 +174,15 @@ void set_total(Result& result, const FittedModel& fitted) {
   }
   set_column(result, ln_sum(fitted, entries));
   if (layout.components == 1) return;
-  const auto most = std::max_element(
-      result.components.begin(), result.components.end(), [](const Component& a, const Component& b) {
-        return a.column_density_cm2.value < b.column_density_cm2.value;
-      });
+  const auto most = std::max_element(result.components.begin(), result.components.end(),
+                                     [](const Component& a, const Component& b) {
+                                       return a.column_density_cm2.value < b.column_density_cm2.value;
+                                     });
   result.temperature_k = most->temperature_k;
-  result.warnings.push_back(fmt::format("T is that of {}, which holds most of the molecules; N is the sum of all "
-                                        "components",
-                                        most->name));
+  result.warnings.push_back(
+      fmt::format("T is that of {}, which holds most of the molecules; N is the sum of all "
+                  "components",
+                  most->name));
 }
 
 void set_single(Result& result, const FittedModel& fitted, const RunOptions& options, bool only_ranges) {
@@ -189,7 +197,8 @@ void set_single(Result& result, const FittedModel& fitted, const RunOptions& opt
   result.temperature_k = exponential(ln_t);
   set_column(result, ln_n);
   const double mixed = covariance_between(fitted, layout.ln_column(0), layout.ln_temperature(0));
-  if (!result.temperature_fixed && !only_ranges) result.correlation_ln_n_t = mixed / (ln_t.error * ln_n.error);
+  if (!result.temperature_fixed && !only_ranges)
+    result.correlation_ln_n_t = mixed / (ln_t.error * ln_n.error);
 }
 
 std::string parameter_name(const FittedModel& fitted, int entry) {
@@ -214,7 +223,8 @@ void set_parameters(Result& result, const FittedModel& fitted) {
   const Eigen::MatrixXd& covariance = covariance_of(fitted.fit);
   for (Eigen::Index k = 0; k < fitted.fit.free.size(); ++k) {
     const int entry = fitted.likelihood->free_entries()[static_cast<std::size_t>(k)];
-    result.parameters.push_back({parameter_name(fitted, entry), fitted.fit.free[k], std::sqrt(covariance(k, k))});
+    result.parameters.push_back(
+        {parameter_name(fitted, entry), fitted.fit.free[k], std::sqrt(covariance(k, k))});
     result.parameter_covariance.emplace_back();
     for (Eigen::Index j = 0; j < covariance.cols(); ++j) {
       result.parameter_covariance.back().push_back(covariance(k, j));
@@ -229,7 +239,8 @@ void set_goodness(Result& result, const FittedModel& fitted) {
   result.p_value = chi2_survival(fitted.fit.chi2, fitted.fit.dof);
 }
 
-// ---- predictions -------------------------------------------------------------------------------------------
+// ---- predictions
+// -------------------------------------------------------------------------------------------
 
 /// One line as the state has it, blends not regarded.
 struct MemberPrediction {
@@ -279,11 +290,12 @@ class Predictor {
     const double size = std::exp(state()[layout_.ln_size(component)]);
     const double beam = line.result.beam_fwhm_arcsec;
     if (!std::isfinite(size) || !(beam > 0.0)) return 1.0;
-    return options_.source_shape == SourceShape::disc ? disc_filling(size, beam) : gaussian_filling(size, beam);
+    return options_.source_shape == SourceShape::disc ? disc_filling(size, beam)
+                                                      : gaussian_filling(size, beam);
   }
 
-  [[nodiscard]] MemberPrediction of_component(const PreparedLine& line, double population, double temperature_k,
-                                              double filling) const {
+  [[nodiscard]] MemberPrediction of_component(const PreparedLine& line, double population,
+                                              double temperature_k, double filling) const {
     MemberPrediction one;
     const LineConstants& constants = line.constants;
     const double upper_column = population * constants.upper_degeneracy;
@@ -305,8 +317,8 @@ class Predictor {
   const RunOptions& options_;
 };
 
-/// Observed less model over its error: with the shared calibration factor taken off where there is one, with the
-/// line's own calibration error in the error where there is none.
+/// Observed less model over its error: with the shared calibration factor taken off where there is one, with
+/// the line's own calibration error in the error where there is none.
 double residual_of(const Measurement& datum, double model, double factor) {
   if (datum.calibration_group >= 0) return (datum.intensity_k_km_s - factor * model) / datum.sigma_k_km_s;
   return (datum.intensity_k_km_s - model) / std::hypot(datum.sigma_k_km_s, datum.calibration_error * model);
@@ -347,7 +359,8 @@ void predict_unused(const Predictor& predictor, std::vector<PreparedLine>& lines
   }
 }
 
-// ---- the diagram's line and curves -------------------------------------------------------------------------
+// ---- the diagram's line and curves
+// -------------------------------------------------------------------------
 
 /// Height of the diagram's line at one energy for some components of one isomer, with its standard error.
 class DiagramHeight {
@@ -359,7 +372,8 @@ class DiagramHeight {
     std::vector<double> terms;
     for (int c = 0; c < layout_.components; ++c) {
       const double ln_t = fitted_.fit.state[layout_.ln_temperature(c)];
-      terms.push_back(fitted_.fit.state[layout_.ln_column(c, isomer_)] - q(c).ln_q - energy_k / std::exp(ln_t));
+      terms.push_back(fitted_.fit.state[layout_.ln_column(c, isomer_)] - q(c).ln_q -
+                      energy_k / std::exp(ln_t));
     }
     const double most = *std::max_element(terms.begin(), terms.end());
     double sum = 0.0;
@@ -373,7 +387,8 @@ class DiagramHeight {
     }
     double variance = 0.0;
     for (const auto& [a, slope_a] : slopes) {
-      for (const auto& [b, slope_b] : slopes) variance += slope_a * slope_b * covariance_between(fitted_, a, b);
+      for (const auto& [b, slope_b] : slopes)
+        variance += slope_a * slope_b * covariance_between(fitted_, a, b);
     }
     const double height = most + std::log(sum);
     const double sigma = std::sqrt(variance);
@@ -419,7 +434,8 @@ void set_curves(Result& result, const FittedModel& fitted, const std::vector<Pre
   }
 }
 
-// ---- N where there is no temperature -----------------------------------------------------------------------
+// ---- N where there is no temperature
+// -----------------------------------------------------------------------
 
 /// The likelihood of ln N at one temperature, looked at over the whole of its range.
 class ColumnScan {
@@ -486,9 +502,9 @@ class ColumnScan {
 };
 
 ColumnAtTemperature column_at(const ModelSetup& setup, double temperature_k) {
-  constexpr double kDetected = 9.0;            // 3 sigma
-  constexpr double kRise = 1.3527;             // half of 1.645^2: one-sided 95 % for measurements [Wilks1938]
-  constexpr double kSilence = 2.9957;          // -ln 0.05: the chance that noise hides the lines is 5 %
+  constexpr double kDetected = 9.0;    // 3 sigma
+  constexpr double kRise = 1.3527;     // half of 1.645^2: one-sided 95 % for measurements [Wilks1938]
+  constexpr double kSilence = 2.9957;  // -ln 0.05: the chance that noise hides the lines is 5 %
   ColumnScan scan(setup);
   ColumnAtTemperature row{temperature_k, kNotKnown, kNotKnown, false};
   if (!scan.only_limits() && scan.detection() >= kDetected) {
@@ -516,8 +532,8 @@ std::vector<double> temperatures_to_list(const RunOptions& options) {
 
 }  // namespace
 
-void set_estimates(Result& result, const FittedModel& fitted, const Species& species, const RunOptions& options,
-                   bool only_ranges) {
+void set_estimates(Result& result, const FittedModel& fitted, const Species& species,
+                   const RunOptions& options, bool only_ranges) {
   const StateLayout& layout = fitted.setup.model->layout();
   const bool several_parts = layout.components > 1 || layout.isomers > 1;
   set_parameters(result, fitted);
@@ -536,15 +552,17 @@ void set_estimates(Result& result, const FittedModel& fitted, const Species& spe
   }
   if (options.source_size_free && layout.components == 1) {
     Estimate ln_size = entry_estimate(fitted, layout.ln_size(0), options);
-    if (only_ranges || std::isnan(ln_size.high95)) ln_size = as_range(ln_size, result.status == Status::several);
+    if (only_ranges || std::isnan(ln_size.high95))
+      ln_size = as_range(ln_size, result.status == Status::several);
     result.source_size_fit_arcsec = exponential(ln_size);
     result.source_size_arcsec = result.source_size_fit_arcsec.value;
   }
   const double t = std::exp(fitted.fit.state[layout.ln_temperature(0)]);
   if (std::isfinite(result.temperature_k.value) && layout.components == 1) {
-    set_partition(result, species.partition->at(std::clamp(t, species.partition->lowest_k(),
-                                                           species.partition->highest_k())),
-                  *species.partition);
+    set_partition(
+        result,
+        species.partition->at(std::clamp(t, species.partition->lowest_k(), species.partition->highest_k())),
+        *species.partition);
   }
 }
 
@@ -580,7 +598,8 @@ void list_columns(Result& result, const std::vector<PreparedLine>& lines, const 
                         temperature_k <= species.partition->highest_k();
     if (!inside) continue;
     single.temperature_k = temperature_k;
-    result.columns_at_temperatures.push_back(column_at(set_up_model(lines, species, single, one), temperature_k));
+    result.columns_at_temperatures.push_back(
+        column_at(set_up_model(lines, species, single, one), temperature_k));
   }
 }
 

@@ -74,7 +74,8 @@ std::vector<Candidate> candidates(const std::vector<PreparedLine>& lines, const 
   const std::string basic = opaque ? "one component, with opacity" : "one component, thin";
   std::vector<Candidate> list = {{basic, {opacity, 1, false, noise}, plain}};
   if (opaque) list.push_back({"one component, thin", {Opacity::thin, 1, false, noise}, plain});
-  if (have_two_isomers(lines, species)) list.push_back({"spin isomers apart", {opacity, 1, true, noise}, plain});
+  if (have_two_isomers(lines, species))
+    list.push_back({"spin isomers apart", {opacity, 1, true, noise}, plain});
   if (have_beams_that_differ(lines) && !options.source_size_rad) {
     list.push_back({"source size free", {opacity, 1, false, noise}, plain, true});
     list.back().options.source_size_free = true;
@@ -143,7 +144,8 @@ std::string choice_of(const std::vector<ModelEntry>& models) {
     if (std::isfinite(model.delta_aicc)) usable.push_back(&model);
   }
   if (usable.size() < 2) return "these lines are too few to compare models";
-  std::stable_sort(usable.begin(), usable.end(), [](const auto* a, const auto* b) { return a->delta_aicc < b->delta_aicc; });
+  std::stable_sort(usable.begin(), usable.end(),
+                   [](const auto* a, const auto* b) { return a->delta_aicc < b->delta_aicc; });
   const ModelEntry& best = *usable[0];
   const double lead = usable[1]->delta_aicc;
   if (lead < kNothing) {

@@ -10,11 +10,11 @@
 
 namespace trotline {
 
-/// Fills Result::models and model_choice: one component thin and with opacity, spin isomers apart, a free source
-/// size, two components, as far as the lines allow each, on the data that the method has fitted.
+/// Fills Result::models and model_choice: one component thin and with opacity, spin isomers apart, a free
+/// source size, two components, as far as the lines allow each, on the data that the method has fitted.
 ///
-/// Likelihood ratios are against the basic model: one component, isomers together, with opacity where every line
-/// has a width.
+/// Likelihood ratios are against the basic model: one component, isomers together, with opacity where every
+/// line has a width.
 void compare_models(Result& result, const std::vector<PreparedLine>& lines, const Species& species,
                     const RunOptions& options);
 

@@ -67,8 +67,8 @@ struct Kept {
 
 class Cache {
  public:
-  std::shared_ptr<const TabulatedPartition> find(const Species& species, const std::string& isomer, double lowest_k,
-                                                 double highest_k) {
+  std::shared_ptr<const TabulatedPartition> find(const Species& species, const std::string& isomer,
+                                                 double lowest_k, double highest_k) {
     const std::lock_guard lock(mutex_);
     for (const Kept& kept : kept_) {
       if (kept.source.lock() == species.partition && kept.isomer == isomer && kept.lowest_k == lowest_k &&
@@ -105,12 +105,12 @@ std::shared_ptr<const PartitionFunction> isomer_partition(const Species& species
   return std::make_shared<IsomerPartition>(species, isomer);
 }
 
-std::vector<std::shared_ptr<const TabulatedPartition>> model_partitions(const Species& species,
-                                                                        const std::vector<std::string>& isomers,
-                                                                        double lowest_k, double highest_k) {
+std::vector<std::shared_ptr<const TabulatedPartition>> model_partitions(
+    const Species& species, const std::vector<std::string>& isomers, double lowest_k, double highest_k) {
   static Cache cache;
   std::vector<std::shared_ptr<const TabulatedPartition>> tables;
-  for (const std::string& isomer : isomers) tables.push_back(cache.find(species, isomer, lowest_k, highest_k));
+  for (const std::string& isomer : isomers)
+    tables.push_back(cache.find(species, isomer, lowest_k, highest_k));
   return tables;
 }
 

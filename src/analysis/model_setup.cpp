@@ -18,8 +18,8 @@ namespace {
 
 constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr double kSpeedOfLightKmS = constants::kLightMPerS / 1e3;
-constexpr double kLeastLnColumn = 9.21;   // 1e4 cm^-2
-constexpr double kMostLnColumn = 59.87;   // 1e26 cm^-2
+constexpr double kLeastLnColumn = 9.21;  // 1e4 cm^-2
+constexpr double kMostLnColumn = 59.87;  // 1e26 cm^-2
 constexpr double kColdestModelK = 2.0;
 constexpr double kHottestModelK = 5000.0;
 constexpr double kAboveBackground = 1.02;  // of the background: nearer, lines vanish and N runs away
@@ -70,10 +70,11 @@ void require_one_measurement(const std::vector<PreparedLine>& lines, const std::
                           kSame * std::abs(first.intensity_k_km_s) &&
                       other.limit == first.limit;
     if (same) continue;
-    throw InputError({fmt::format("the rows of blend '{}' differ: {:g} K km/s in table line {}, {:g} K km/s in {}",
-                                  printable(first.blend), first.intensity_k_km_s, first.table_line,
-                                  other.intensity_k_km_s, other.table_line),
-                      "the intensity of the whole blend in each of its rows"});
+    throw InputError(
+        {fmt::format("the rows of blend '{}' differ: {:g} K km/s in table line {}, {:g} K km/s in {}",
+                     printable(first.blend), first.intensity_k_km_s, first.table_line, other.intensity_k_km_s,
+                     other.table_line),
+         "the intensity of the whole blend in each of its rows"});
   }
 }
 
@@ -86,8 +87,9 @@ Measurement measurement_of(const LineResult& line, int group) {
   datum.calibration_group = group;
   if (!std::isnan(datum.sigma_k_km_s)) return datum;
   if (!(line.intensity_k_km_s > 0.0)) {
-    throw InputError({fmt::format("{} is a limit of {:g} K km/s without an error", named(line), line.intensity_k_km_s),
-                      "a limit above 0, which is taken as three sigma, or a limit with its error"});
+    throw InputError(
+        {fmt::format("{} is a limit of {:g} K km/s without an error", named(line), line.intensity_k_km_s),
+         "a limit above 0, which is taken as three sigma, or a limit with its error"});
   }
   datum.sigma_k_km_s = line.intensity_k_km_s / kLimitSigma;
   return datum;
@@ -107,13 +109,13 @@ class CalibrationGroups {
   std::map<std::string, int> numbers_;
 };
 
-ModelLine model_line(const PreparedLine& line, const PreparedLine& first, int datum, const RunOptions& options) {
+ModelLine model_line(const PreparedLine& line, const PreparedLine& first, int datum,
+                     const RunOptions& options) {
   ModelLine result;
   result.constants = line.constants;
   result.fwhm_km_s = line.result.fwhm_km_s;
   result.datum = datum;
-  result.offset_km_s =
-      kSpeedOfLightKmS * (1.0 - line.constants.frequency_hz / first.constants.frequency_hz);
+  result.offset_km_s = kSpeedOfLightKmS * (1.0 - line.constants.frequency_hz / first.constants.frequency_hz);
   if (options.source_size_free || options.source_size_rad) {
     if (!(line.result.beam_fwhm_arcsec > 0.0)) {
       throw InputError({named(line.result) + " has no beam, which a source size needs", "one for every line",
@@ -209,7 +211,8 @@ void require_options_agree(const RunOptions& options, const ModelKind& kind) {
                       "no 'column_density', or one component with its isomers together"});
   }
   if (options.column_density_per_cm2 && options.temperature_k && !options.source_size_free) {
-    throw InputError({"'temperature' and 'column_density' are both given", "one of them, or a source size that is free"});
+    throw InputError(
+        {"'temperature' and 'column_density' are both given", "one of them, or a source size that is free"});
   }
 }
 
@@ -228,9 +231,10 @@ TemperatureSpan temperature_span(const Species& species, const RunOptions& optio
     highest = std::max(highest, *options.temperature_k);
   }
   if (!(lowest < highest)) {
-    throw InputError({fmt::format("no temperature is left between {:g} K and {:g} K", lowest, highest),
-                      fmt::format("temperatures above the background, inside the range of Q(T) of {}: {:g} K to {:g} K",
-                                  species.name, species.partition->lowest_k(), species.partition->highest_k())});
+    throw InputError(
+        {fmt::format("no temperature is left between {:g} K and {:g} K", lowest, highest),
+         fmt::format("temperatures above the background, inside the range of Q(T) of {}: {:g} K to {:g} K",
+                     species.name, species.partition->lowest_k(), species.partition->highest_k())});
   }
   return {lowest, highest};
 }
@@ -244,9 +248,10 @@ ModelKind model_kind(const std::vector<PreparedLine>& lines, const RunOptions& o
     if (without == nullptr) {
       kind.opacity = Opacity::curve_of_growth;
     } else {
-      warnings.push_back(fmt::format("{} has no width: all lines are taken as optically thin. A column "
-                                     "'fwhm [km/s]' or the option 'line_width' lets the fit see opacity",
-                                     named(*without)));
+      warnings.push_back(
+          fmt::format("{} has no width: all lines are taken as optically thin. A column "
+                      "'fwhm [km/s]' or the option 'line_width' lets the fit see opacity",
+                      named(*without)));
     }
   } else if (options.opacity != "thin") {
     require_width(without, options.opacity);
@@ -255,8 +260,8 @@ ModelKind model_kind(const std::vector<PreparedLine>& lines, const RunOptions& o
   return kind;
 }
 
-ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& species, const RunOptions& options,
-                        const ModelKind& kind) {
+ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& species,
+                        const RunOptions& options, const ModelKind& kind) {
   require_options_agree(options, kind);
   ModelSetup setup;
   setup.kind = kind;
@@ -264,7 +269,8 @@ ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& s
   if (kind.isomers_apart) {
     setup.isomers = spin_isomers(species);
     if (setup.isomers.empty()) {
-      throw InputError({fmt::format("{} has no spin isomers to be fitted apart", species.name), "isomers 'together'"});
+      throw InputError(
+          {fmt::format("{} has no spin isomers to be fitted apart", species.name), "isomers 'together'"});
     }
   }
   setup.rows_of_datum = rows_by_datum(lines);
@@ -273,7 +279,8 @@ ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& s
   for (std::size_t d = 0; d < setup.rows_of_datum.size(); ++d) {
     const auto& rows = setup.rows_of_datum[d];
     require_one_measurement(lines, rows);
-    setup.problem.data.push_back(measurement_of(lines[rows.front()].result, groups.of(lines[rows.front()].result)));
+    setup.problem.data.push_back(
+        measurement_of(lines[rows.front()].result, groups.of(lines[rows.front()].result)));
     for (const std::size_t row : rows) {
       model_lines.push_back(model_line(lines[row], lines[rows.front()], static_cast<int>(d), options));
       if (kind.isomers_apart) {
@@ -285,7 +292,8 @@ ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& s
   }
   TemperatureSpan span = temperature_span(species, options);
   for (const std::string& isomer : setup.isomers) {
-    if (!isomer.empty()) span.lowest_k = std::max(span.lowest_k, isomer_partition(species, isomer)->lowest_k());
+    if (!isomer.empty())
+      span.lowest_k = std::max(span.lowest_k, isomer_partition(species, isomer)->lowest_k());
   }
   setup.model = std::make_shared<ForwardModel>(
       std::move(model_lines), model_partitions(species, setup.isomers, span.lowest_k, span.highest_k),

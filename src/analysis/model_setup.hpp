@@ -26,24 +26,26 @@ struct ModelKind {
 struct ModelSetup {
   ModelKind kind;
   std::shared_ptr<const ForwardModel> model;
-  std::vector<std::string> isomers;                    ///< by name; one empty name where they are together
-  std::vector<std::size_t> row_of_line;                ///< prepared line of every line of the model
+  std::vector<std::string> isomers;      ///< by name; one empty name where they are together
+  std::vector<std::size_t> row_of_line;  ///< prepared line of every line of the model
   std::vector<std::vector<std::size_t>> rows_of_datum;
   LikelihoodProblem problem;
 };
 
-/// The kind that the options ask for. `automatic` opacity is the curve of growth where every line that is fitted
-/// has a width; otherwise thin lines, which goes into the warnings.
+/// The kind that the options ask for. `automatic` opacity is the curve of growth where every line that is
+/// fitted has a width; otherwise thin lines, which goes into the warnings.
 /// @throws InputError where an opacity is asked for and a line has no width
 [[nodiscard]] ModelKind model_kind(const std::vector<PreparedLine>& lines, const RunOptions& options,
                                    std::vector<std::string>& warnings);
 
 /// Makes the model of all lines that are used.
 ///
-/// Rows of one blend are one datum, each member at the velocity that its rest frequency gives it. Bounds: T from
-/// just above the background to the end of Q (or the option `temperature_range`), N from 1e4 to 1e26 cm^-2, a free
-/// size from a fiftieth of the smallest beam to twenty times the largest (or `source_size_range`).
-/// @throws InputError where the rows of a blend differ in intensity, a limit has no error and is not above 0, a
+/// Rows of one blend are one datum, each member at the velocity that its rest frequency gives it. Bounds: T
+/// from just above the background to the end of Q (or the option `temperature_range`), N from 1e4 to 1e26
+/// cm^-2, a free size from a fiftieth of the smallest beam to twenty times the largest (or
+/// `source_size_range`).
+/// @throws InputError where the rows of a blend differ in intensity, a limit has no error and is not above 0,
+/// a
 ///         size is free and a line has no beam, or a given value lies outside what the model can take
 [[nodiscard]] ModelSetup set_up_model(const std::vector<PreparedLine>& lines, const Species& species,
                                       const RunOptions& options, const ModelKind& kind);

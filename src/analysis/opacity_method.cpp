@@ -15,7 +15,8 @@ namespace {
 Opacity opacity_of(const RunOptions& options) {
   if (options.opacity == "thin") {
     throw InputError({"method 'opacity-line' and opacity 'thin' contradict each other",
-                      "opacity 'curve-of-growth' or 'line-centre'", "method 'line' is the one for thin lines"});
+                      "opacity 'curve-of-growth' or 'line-centre'",
+                      "method 'line' is the one for thin lines"});
   }
   return options.opacity == "line-centre" ? Opacity::line_centre : Opacity::curve_of_growth;
 }
@@ -39,11 +40,14 @@ OpacityLineData corrected_data(const std::vector<PreparedLine>& lines, const std
   return data;
 }
 
-/// Ends of T and ln N from the curvature: symmetric in 1/T and in ln N. No bound above where 1/T = 0 is inside.
+/// Ends of T and ln N from the curvature: symmetric in 1/T and in ln N. No bound above where 1/T = 0 is
+/// inside.
 void set_estimates(Result& result, const ThermalLineFit& fit, const ThermalState& state) {
   const double beta = fit.inverse_temperature_per_k;
   const double sigma = std::sqrt(fit.inverse_temperature_variance);
-  const auto temperature = [&](double z) { return beta + z * sigma > 0.0 ? 1.0 / (beta + z * sigma) : kNotKnown; };
+  const auto temperature = [&](double z) {
+    return beta + z * sigma > 0.0 ? 1.0 / (beta + z * sigma) : kNotKnown;
+  };
   result.temperature_k.value = state.temperature_k;
   if (!result.temperature_fixed) {
     result.temperature_k = {state.temperature_k, state.temperature_sigma_k, temperature(1.0),
@@ -66,7 +70,8 @@ void fill_done(Result& result, std::vector<PreparedLine>& lines, const OpacityLi
   }
   if (fit.other_solutions > 0) {
     result.warnings.push_back(fmt::format(
-        "{} other pair{} of T and N agree{} with the opacity corrections they imply; this is the one of least "
+        "{} other pair{} of T and N agree{} with the opacity corrections they imply; this is the one of "
+        "least "
         "chi2. Compare the method 'likelihood'",
         fit.other_solutions, fit.other_solutions == 1 ? "" : "s", fit.other_solutions == 1 ? "s" : ""));
   }
@@ -96,9 +101,10 @@ void fit_both(Result& result, std::vector<PreparedLine>& lines, const OpacityLin
     say_no_fit(result, fit.status);
   } else if (t < partition.lowest_k() || t > partition.highest_k()) {
     result.status = Status::unbounded;
-    result.message = fmt::format("the line gives T = {:.4g} K, outside the range in which the species has a Q(T), "
-                                 "{:g} K to {:g} K: no column density",
-                                 t, partition.lowest_k(), partition.highest_k());
+    result.message = fmt::format(
+        "the line gives T = {:.4g} K, outside the range in which the species has a Q(T), "
+        "{:g} K to {:g} K: no column density",
+        t, partition.lowest_k(), partition.highest_k());
   } else {
     fill_done(result, lines, data, fit, partition);
   }
@@ -125,8 +131,9 @@ void fit_by_opacity_line(Result& result, std::vector<PreparedLine>& lines, const
     }
   } else if (used.size() == 1) {
     result.status = Status::one_line;
-    result.message = "no temperature; give the option 'temperature' for N with its opacity, or take the method "
-                     "'likelihood' for N at several temperatures";
+    result.message =
+        "no temperature; give the option 'temperature' for N with its opacity, or take the method "
+        "'likelihood' for N at several temperatures";
   } else {
     fit_both(result, lines, data, partition);
   }

@@ -1,10 +1,9 @@
-#include <trotline/analysis/run_options.hpp>
-
 #include <fmt/format.h>
 
 #include <cmath>
 #include <numbers>
 
+#include <trotline/analysis/run_options.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
 
@@ -17,7 +16,6 @@ std::string show_number(double value, const char* unit) {
   return unit[0] == '\0' ? fmt::format("{:.10g}", value) : fmt::format("{:.10g} {}", value, unit);
 }
 
-
 double positive(const std::string& text, Dimension dimension) {
   const double value = parse_quantity(text, dimension);
   if (!(value > 0.0)) throw InputError({fmt::format("'{}' is not above zero", text), "a value above zero"});
@@ -27,7 +25,8 @@ double positive(const std::string& text, Dimension dimension) {
 double fraction(const std::string& text) {
   const double value = parse_quantity(text, Dimension::dimensionless);
   if (!(value > 0.0 && value <= 1.0)) {
-    throw InputError({fmt::format("'{}' is outside 0 to 1", text), "a fraction above 0 and up to 1, or percent"});
+    throw InputError(
+        {fmt::format("'{}' is outside 0 to 1", text), "a fraction above 0 and up to 1, or percent"});
   }
   return value;
 }
@@ -84,13 +83,14 @@ struct NumberOption {
 RunOption make(const NumberOption& number) {
   RunOption option{number.key, number.example, number.help, {}, {}};
   option.set = [number](RunOptions& options, const std::string& text) {
-    options.*number.member = number.dimension == Dimension::dimensionless ? fraction(text)
-                                                                          : positive(text, number.dimension);
+    options.*number.member =
+        number.dimension == Dimension::dimensionless ? fraction(text) : positive(text, number.dimension);
     if (number.dimension == Dimension::velocity) *(options.*number.member) *= 1e-3;  // kept in km/s
   };
   option.show = [number](const RunOptions& options) {
     const auto& value = options.*number.member;
-    return value ? show_number(*value / number.internal_per_shown, number.shown_unit) : std::string("not given");
+    return value ? show_number(*value / number.internal_per_shown, number.shown_unit)
+                 : std::string("not given");
   };
   return option;
 }
@@ -104,7 +104,8 @@ RunOption make_range(const std::string& key, const std::string& example, const s
           },
           [=](const RunOptions& options) {
             const auto& range = options.*member;
-            return range ? fmt::format("{:.10g} {}..{:.10g} {}", range->low / scale, unit, range->high / scale, unit)
+            return range ? fmt::format("{:.10g} {}..{:.10g} {}", range->low / scale, unit,
+                                       range->high / scale, unit)
                          : std::string("not given");
           }};
 }
@@ -157,19 +158,22 @@ PriorKnowledge parse_prior(const std::string& text, Dimension dimension) {
     return {positive(std::string(trimmed(text.substr(0, at))), dimension),
             positive(std::string(trimmed(text.substr(at + sign.size()))), dimension)};
   }
-  throw InputError({fmt::format("'{}' has no error", printable(text)), "a value and its error, as '40 K +/- 5 K'"});
+  throw InputError(
+      {fmt::format("'{}' has no error", printable(text)), "a value and its error, as '40 K +/- 5 K'"});
 }
 
 RunOption make_prior(const std::string& key, const std::string& example, const std::string& help,
                      Dimension dimension, std::optional<PriorKnowledge> RunOptions::*member, double scale,
                      const char* unit) {
-  return {key, example, help,
-          [=](RunOptions& options, const std::string& text) { options.*member = parse_prior(text, dimension); },
-          [=](const RunOptions& options) {
-            const auto& prior = options.*member;
-            return prior ? fmt::format("{:.10g} {} +/- {:.10g} {}", prior->value / scale, unit, prior->sigma / scale, unit)
-                         : std::string("not given");
-          }};
+  return {
+      key, example, help,
+      [=](RunOptions& options, const std::string& text) { options.*member = parse_prior(text, dimension); },
+      [=](const RunOptions& options) {
+        const auto& prior = options.*member;
+        return prior ? fmt::format("{:.10g} {} +/- {:.10g} {}", prior->value / scale, unit,
+                                   prior->sigma / scale, unit)
+                     : std::string("not given");
+      }};
 }
 
 RunOption make_words(const std::string& key, const std::string& example, const std::string& help,
@@ -194,15 +198,17 @@ RunOption make_number(const std::string& key, const std::string& example, const 
 
 void set_seed(RunOptions& options, const std::string& text) {
   const std::optional<long long> seed = parse_whole_number(text);
-  if (!seed || *seed < 0) throw InputError({fmt::format("'{}' is no seed", printable(text)), "a whole number from 0 on"});
+  if (!seed || *seed < 0)
+    throw InputError({fmt::format("'{}' is no seed", printable(text)), "a whole number from 0 on"});
   options.seed = static_cast<std::uint64_t>(*seed);
 }
 
 /// The options of the estimators beyond the straight line.
 void add_model_options(std::vector<RunOption>& table) {
-  table.push_back(make_words("opacity", "automatic",
-                             "curve-of-growth, line-centre or thin; automatic: the curve of growth where lines have widths",
-                             {"automatic", "curve-of-growth", "line-centre", "thin"}, &RunOptions::opacity));
+  table.push_back(make_words(
+      "opacity", "automatic",
+      "curve-of-growth, line-centre or thin; automatic: the curve of growth where lines have widths",
+      {"automatic", "curve-of-growth", "line-centre", "thin"}, &RunOptions::opacity));
   table.push_back(make_words("intervals", "profile",
                              "profile (of the likelihood), curvature (at the best fit) or posterior",
                              {"profile", "curvature", "posterior"}, &RunOptions::intervals));
@@ -212,7 +218,9 @@ void add_model_options(std::vector<RunOption>& table) {
                    [](RunOptions& o, const std::string& text) { o.keep_samples = yes_or_no(text); },
                    [](const RunOptions& o) { return std::string(o.keep_samples ? "yes" : "no"); }});
   table.push_back({"components", "1", "how many components, each with its own T and N: 1 or 2",
-                   [](RunOptions& o, const std::string& text) { o.components = one_of(text, {"1", "2"}) == "2" ? 2 : 1; },
+                   [](RunOptions& o, const std::string& text) {
+                     o.components = one_of(text, {"1", "2"}) == "2" ? 2 : 1;
+                   },
                    [](const RunOptions& o) { return std::to_string(o.components); }});
   table.push_back({"isomers", "together", "together, or apart: a column density for each spin isomer",
                    [](RunOptions& o, const std::string& text) {
@@ -225,36 +233,43 @@ void add_model_options(std::vector<RunOption>& table) {
                              Dimension::temperature, &RunOptions::temperature_range_k, 1.0, "K"));
   table.push_back(make_prior("temperature_prior", "40 K +/- 5 K", "what is known of T beforehand",
                              Dimension::temperature, &RunOptions::temperature_prior_k, 1.0, "K"));
-  table.push_back(make_range("source_size_range", "0.5 arcsec..30 arcsec", "sizes that are looked at, where it is free",
-                             Dimension::angle, &RunOptions::source_size_range_rad, kRadPerArcsec, "arcsec"));
-  table.push_back(make_prior("source_size_prior", "4 arcsec +/- 1 arcsec", "what is known of a free size beforehand",
-                             Dimension::angle, &RunOptions::source_size_prior_rad, kRadPerArcsec, "arcsec"));
+  table.push_back(make_range("source_size_range", "0.5 arcsec..30 arcsec",
+                             "sizes that are looked at, where it is free", Dimension::angle,
+                             &RunOptions::source_size_range_rad, kRadPerArcsec, "arcsec"));
+  table.push_back(make_prior("source_size_prior", "4 arcsec +/- 1 arcsec",
+                             "what is known of a free size beforehand", Dimension::angle,
+                             &RunOptions::source_size_prior_rad, kRadPerArcsec, "arcsec"));
   table.push_back({"compare_models", "no", "set the models side by side that these lines allow: yes or no",
                    [](RunOptions& o, const std::string& text) { o.compare_models = yes_or_no(text); },
                    [](const RunOptions& o) { return std::string(o.compare_models ? "yes" : "no"); }});
-  table.push_back({"collisions", "FILE", "file of collision rates, for critical densities",
-                   [](RunOptions& o, const std::string& text) { o.collisions = std::string(trimmed(text)); },
-                   [](const RunOptions& o) { return o.collisions.empty() ? std::string("not given") : o.collisions; }});
-  table.push_back(make_number("density", "1e5 cm-3", "density of the collision partner, to hold against critical densities",
+  table.push_back(
+      {"collisions", "FILE", "file of collision rates, for critical densities",
+       [](RunOptions& o, const std::string& text) { o.collisions = std::string(trimmed(text)); },
+       [](const RunOptions& o) { return o.collisions.empty() ? std::string("not given") : o.collisions; }});
+  table.push_back(make_number("density", "1e5 cm-3",
+                              "density of the collision partner, to hold against critical densities",
                               Dimension::number_density, &RunOptions::density_per_cm3, 1e6, "cm-3"));
 }
 
 std::vector<RunOption> make_table() {
   std::vector<RunOption> table;
-  table.push_back(make_words("method", "line", "how N and T are estimated: line, opacity-line, likelihood, robust",
+  table.push_back(make_words("method", "line",
+                             "how N and T are estimated: line, opacity-line, likelihood, robust",
                              {"line", "opacity-line", "likelihood", "robust"}, &RunOptions::method));
   table.push_back(make({"temperature", "45 K", "take this temperature and fit N only", Dimension::temperature,
                         &RunOptions::temperature_k, 1.0, "K"}));
-  table.push_back({"background", "2.7255 K", "temperature of the background behind the lines; 0 K for none, or free",
-                   set_background, [](const RunOptions& o) {
+  table.push_back({"background", "2.7255 K",
+                   "temperature of the background behind the lines; 0 K for none, or free", set_background,
+                   [](const RunOptions& o) {
                      return o.background_free ? std::string("free") : show_number(o.background_k, "K");
                    }});
-  table.push_back({"source_size", "8 arcsec", "size of the source, for beam filling: a size, free or none (f = 1)",
-                   set_source_size, show_source_size});
+  table.push_back({"source_size", "8 arcsec",
+                   "size of the source, for beam filling: a size, free or none (f = 1)", set_source_size,
+                   show_source_size});
   table.push_back({"source_shape", "gaussian", "gaussian (size is the FWHM) or disc (size is the diameter)",
                    [](RunOptions& o, const std::string& text) {
                      o.source_shape = one_of(text, {"gaussian", "disc"}) == "disc" ? SourceShape::disc
-                                                                                    : SourceShape::gaussian;
+                                                                                   : SourceShape::gaussian;
                    },
                    [](const RunOptions& o) {
                      return std::string(o.source_shape == SourceShape::disc ? "disc" : "gaussian");
@@ -265,7 +280,8 @@ std::vector<RunOption> make_table() {
                         Dimension::velocity, &RunOptions::fwhm_km_s, 1.0, "km/s"}));
   table.push_back(make({"calibration_error", "10 %", "calibration error, for rows that give none",
                         Dimension::dimensionless, &RunOptions::calibration_error, 1.0, ""}));
-  table.push_back({"calibration_shared", "yes", "rows without a calibration group share one factor: yes or no",
+  table.push_back({"calibration_shared", "yes",
+                   "rows without a calibration group share one factor: yes or no",
                    [](RunOptions& o, const std::string& text) { o.calibration_shared = yes_or_no(text); },
                    [](const RunOptions& o) { return std::string(o.calibration_shared ? "yes" : "no"); }});
   table.push_back(make({"forward_efficiency", "0.95", "for antenna temperatures in rows that give none",
@@ -276,11 +292,12 @@ std::vector<RunOption> make_table() {
   table.push_back(make_labels("without", "leave these transitions out", &RunOptions::without_lines));
   table.push_back(make_range("upper_energy", "0 K..300 K", "fit lines with E_u/k in this range only",
                              Dimension::temperature, &RunOptions::upper_energy_k, 1.0, "K"));
-  table.push_back(make_range("frequency", "80 GHz..116 GHz", "fit lines in this range only", Dimension::frequency,
-                             &RunOptions::frequency_hz, 1e9, "GHz"));
+  table.push_back(make_range("frequency", "80 GHz..116 GHz", "fit lines in this range only",
+                             Dimension::frequency, &RunOptions::frequency_hz, 1e9, "GHz"));
   table.push_back({"least_snr", "3", "leave out lines with W/sigma below this", set_least_snr,
                    [](const RunOptions& o) { return show_number(o.least_snr, ""); }});
-  table.push_back({"frequency_tolerance", "0.5 MHz", "how far a frequency in the table may be off", set_tolerance,
+  table.push_back({"frequency_tolerance", "0.5 MHz", "how far a frequency in the table may be off",
+                   set_tolerance,
                    [](const RunOptions& o) { return show_number(o.frequency_tolerance_hz / 1e6, "MHz"); }});
   add_model_options(table);
   table.push_back({"source", "NAME", "which source of a table that holds several",
@@ -308,8 +325,8 @@ void set_run_option(RunOptions& options, const std::string& key, const std::stri
   if (option == nullptr) {
     std::vector<std::string> keys;
     for (const RunOption& known : run_option_table()) keys.push_back(known.key);
-    throw InputError({fmt::format("there is no option '{}'", printable(key)), "one of: " + listed(keys, keys.size()),
-                      did_you_mean(key, keys)});
+    throw InputError({fmt::format("there is no option '{}'", printable(key)),
+                      "one of: " + listed(keys, keys.size()), did_you_mean(key, keys)});
   }
   try {
     option->set(options, value);

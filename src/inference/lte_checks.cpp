@@ -209,8 +209,8 @@ std::vector<LeaveOneOut> leave_each_out(const IntensityLikelihood& likelihood, c
 }
 
 /// A copy of the problem in which only some data have weight, fitted from the whole's answer.
-SubsetFit fit_subset(const IntensityLikelihood& likelihood, const LikelihoodFit& fit, const DatumGrouping& grouping,
-                     int group) {
+SubsetFit fit_subset(const IntensityLikelihood& likelihood, const LikelihoodFit& fit,
+                     const DatumGrouping& grouping, int group) {
   SubsetFit subset;
   subset.group = group;
   LikelihoodProblem problem = likelihood.problem();

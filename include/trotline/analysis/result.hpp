@@ -38,9 +38,10 @@ enum class Status {
 };
 
 /// Every status, for those who go through them.
-inline constexpr Status kEveryStatus[] = {
-    Status::done,       Status::one_line, Status::not_thermal, Status::only_limits, Status::no_lines,   Status::unbounded,
-    Status::degenerate, Status::several,  Status::at_bound,    Status::no_solution, Status::not_converged};
+inline constexpr Status kEveryStatus[] = {Status::done,        Status::one_line,     Status::not_thermal,
+                                          Status::only_limits, Status::no_lines,     Status::unbounded,
+                                          Status::degenerate,  Status::several,      Status::at_bound,
+                                          Status::no_solution, Status::not_converged};
 
 [[nodiscard]] const char* name_of(Status status);
 
@@ -58,7 +59,7 @@ struct LineResult {
   std::string blend;  ///< empty where the line stands alone
   double ln_nu_gu = kNotKnown;
   double ln_nu_gu_error = kNotKnown;  ///< noise and calibration together
-  double optical_depth = kNotKnown;   ///< at line centre, where a width is known; of two components the larger
+  double optical_depth = kNotKnown;  ///< at line centre, where a width is known; of two components the larger
   double filling = 1.0;
   double beam_fwhm_arcsec = kNotKnown;
   double fwhm_km_s = kNotKnown;
@@ -126,7 +127,8 @@ struct Alternative {
 /// What leaving one line out does to the answer.
 struct LeftOut {
   std::string transition;
-  double standardised_residual = kNotKnown;  ///< of the line against the fit with it, over its expected scatter
+  double standardised_residual =
+      kNotKnown;  ///< of the line against the fit with it, over its expected scatter
   double temperature_k = kNotKnown;
   double temperature_error_k = kNotKnown;
   double log10_column_density_cm2 = kNotKnown;
@@ -148,10 +150,11 @@ struct ModelEntry {
   double minus_2_ln_likelihood = kNotKnown;
   double delta_aicc = kNotKnown;  ///< above the best of the models that are listed
   double delta_bic = kNotKnown;
-  double likelihood_ratio = kNotKnown;  ///< against the model of one component, isomers together, with opacity
-  double p_value = kNotKnown;           ///< of such a ratio, if the smaller of the two holds
-  bool on_boundary = false;             ///< the smaller lies at the edge of the larger: p is no exact number
-  std::string note;                     ///< e.g. why the model could not be fitted
+  double likelihood_ratio =
+      kNotKnown;               ///< against the model of one component, isomers together, with opacity
+  double p_value = kNotKnown;  ///< of such a ratio, if the smaller of the two holds
+  bool on_boundary = false;    ///< the smaller lies at the edge of the larger: p is no exact number
+  std::string note;            ///< e.g. why the model could not be fitted
 };
 
 /// A curve of the diagram where the model is no single straight line.
@@ -168,7 +171,7 @@ struct DiagramCurve {
 
 /// How intervals of a posterior were come by; draws only where they were asked for.
 struct PosteriorSummary {
-  std::string method;  ///< "quadrature", "ensemble sampler", or empty: no posterior was asked for
+  std::string method;   ///< "quadrature", "ensemble sampler", or empty: no posterior was asked for
   std::string refusal;  ///< why it gives no intervals; empty where it does
   std::uint64_t seed = 0;
   int walkers = 0;  ///< of each ensemble
@@ -220,7 +223,8 @@ struct Result {
   Estimate source_size_fit_arcsec;           ///< where the size is fitted
   std::vector<Component> components;         ///< where there are more than one
   std::vector<FittedParameter> parameters;
-  std::vector<std::vector<double>> parameter_covariance;  ///< rows and columns as parameters; NaN where not known
+  std::vector<std::vector<double>>
+      parameter_covariance;  ///< rows and columns as parameters; NaN where not known
   std::vector<Alternative> alternatives;
   PosteriorSummary posterior;
   std::vector<LineResult> lines;

@@ -21,11 +21,11 @@ struct PriorKnowledge {
 
 /// Everything that a person may set about the analysis of one source and species. SI inside.
 struct RunOptions {
-  std::string method = "line";          ///< line, opacity-line, likelihood, robust
-  std::string opacity = "automatic";    ///< automatic, curve-of-growth, line-centre, thin; not for `line`
-  std::string intervals = "profile";    ///< profile, curvature, posterior
-  std::uint64_t seed = 1;               ///< of the draws from a posterior
-  bool keep_samples = false;            ///< draws of the posterior go into the result
+  std::string method = "line";        ///< line, opacity-line, likelihood, robust
+  std::string opacity = "automatic";  ///< automatic, curve-of-growth, line-centre, thin; not for `line`
+  std::string intervals = "profile";  ///< profile, curvature, posterior
+  std::uint64_t seed = 1;             ///< of the draws from a posterior
+  bool keep_samples = false;          ///< draws of the posterior go into the result
   int components = 1;
   bool isomers_apart = false;
   bool compare_models = false;
@@ -36,7 +36,7 @@ struct RunOptions {
   std::optional<PriorKnowledge> source_size_prior_rad;
   bool source_size_free = false;  ///< fitted; source_size_rad is then empty
   bool background_free = false;
-  std::string collisions;  ///< path of a file of collision rates; empty: none
+  std::string collisions;                 ///< path of a file of collision rates; empty: none
   std::optional<double> density_per_cm3;  ///< of the collision partner
   double background_k = constants::kCosmicBackgroundK;
   std::optional<double> source_size_rad;  ///< FWHM or diameter; without one the source fills every beam
@@ -60,9 +60,9 @@ struct RunOptions {
 /// One option: the same word serves the command line (--two-words), the run description (two_words) and the
 /// provenance of every output.
 struct RunOption {
-  std::string key;      ///< two_words
-  std::string example;  ///< a valid value
-  std::string help;     ///< one line
+  std::string key;                                           ///< two_words
+  std::string example;                                       ///< a valid value
+  std::string help;                                          ///< one line
   std::function<void(RunOptions&, const std::string&)> set;  ///< throws InputError on a value that is none
   std::function<std::string(const RunOptions&)> show;        ///< the value in force, as text
 };

@@ -12,11 +12,11 @@ enum class LteCheckKind {
   goodness_of_fit,  ///< figure: chi2; p of a larger one
   curvature,        ///< figure: z of a term quadratic in E_u added to ln(N_u/g_u)
   outlier,          ///< figure: largest standardised residual [sigma]; p allows for the number of lines
-  groups,           ///< figure: largest |z| of a group's T against the common one; p of N and T of every group
-  opacity_trend,    ///< figure: z of a factor on all optical depths
-  beam_trend,       ///< figure: z of a power of the beam's size
-  limits,           ///< figure: the most by which the model exceeds a limit [sigma]
-  collisions        ///< figure: largest critical density over the density given
+  groups,         ///< figure: largest |z| of a group's T against the common one; p of N and T of every group
+  opacity_trend,  ///< figure: z of a factor on all optical depths
+  beam_trend,     ///< figure: z of a power of the beam's size
+  limits,         ///< figure: the most by which the model exceeds a limit [sigma]
+  collisions      ///< figure: largest critical density over the density given
 };
 
 enum class CheckOutcome { pass, fail, not_testable };
@@ -27,7 +27,8 @@ struct LteCheck {
   double figure = std::numeric_limits<double>::quiet_NaN();
   double p_value = std::numeric_limits<double>::quiet_NaN();  ///< NaN where the check is no test
   CheckOutcome outcome = CheckOutcome::not_testable;
-  std::vector<int> data = {};  ///< the data that speak loudest: the outlier, limits broken, lines not thermalised
+  std::vector<int> data =
+      {};  ///< the data that speak loudest: the outlier, limits broken, lines not thermalised
 };
 
 /// What leaving one datum out does.
@@ -49,7 +50,7 @@ struct DatumGrouping {
 struct SubsetFit {
   int grouping = 0;  ///< index into LteOptions::groupings
   int group = 0;
-  int data = 0;  ///< how many
+  int data = 0;                                                     ///< how many
   double temperature_k = std::numeric_limits<double>::quiet_NaN();  ///< NaN where they hold none
   double temperature_sigma_k = std::numeric_limits<double>::quiet_NaN();
 };
@@ -73,8 +74,8 @@ struct LteReport {
   LteVerdict verdict = LteVerdict::cannot_tell;
 };
 
-/// Whether the temperature of a fit describes its data. With several components the trends (curvature, groups,
-/// opacity, beam) are not testable.
+/// Whether the temperature of a fit describes its data. With several components the trends (curvature,
+/// groups, opacity, beam) are not testable.
 ///
 /// Every trend is a score test: the parameter that would describe a departure is added to the linearised fit,
 /// calibration included, and its estimate is held against its standard error. Nothing is refitted, so a test
