@@ -73,7 +73,7 @@ class Walker {
   /// The value of the next mandatory card, which must be `keyword`.
   std::string_view next(const std::string& keyword) {
     const std::string_view found = card(index_++);
-    if (found.empty() || trimmed(found.substr(0, 8)) != keyword || found.substr(8, 1) != "=") {
+    if (found.empty() || trimmed(found.substr(0, 8)) != keyword || found.substr(8, 2) != "= ") {
       refuse(fmt::format("keyword {} is missing where '{}' stands", keyword,
                          printable(trimmed(found.substr(0, std::min<std::size_t>(30, found.size()))))));
     }
