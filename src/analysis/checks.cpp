@@ -41,7 +41,7 @@ Check temperature_set(const Result& result) {
   if (std::isnan(t.high95)) {
     check.meaning = "within 95 % T has no upper bound: the data bound it from below only";
   } else if (check.figure > kMostRelativeError) {
-    check.meaning = "the error of T is as large as T itself";
+    check.meaning = "the error of T is more than half of T";
   } else {
     check.outcome = Outcome::pass;
     check.meaning = fmt::format("T is known to {:.2g} %", 100.0 * check.figure);
@@ -55,7 +55,7 @@ Check limits_kept(const Result& result) {
   int limits = 0;
   std::vector<std::string> broken;
   for (const LineResult& line : result.lines) {
-    if (!line.limit || std::isnan(line.model_intensity_k_km_s)) continue;
+    if (!line.limit || line.excluded || std::isnan(line.model_intensity_k_km_s)) continue;
     ++limits;
     const double sigma =
         std::isnan(line.intensity_error_k_km_s) ? line.intensity_k_km_s / 3.0 : line.intensity_error_k_km_s;

@@ -118,6 +118,15 @@ void set_diagram_line(Result& result, const ThermalLineFit& fit) {
   result.p_value = chi2_survival(fit.chi2, fit.dof);
 }
 
+namespace {
+
+/// A limit that the user has not put aside.
+bool is_usable_limit(const LineResult& line) {
+  return line.limit && !line.excluded && line.intensity_k_km_s > 0.0;
+}
+
+}  // namespace
+
 void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
                       const PartitionFunction& partition, const RunOptions& options, bool from_limits) {
   const double background_k = options.background_k;
@@ -127,8 +136,7 @@ void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
     if (t <= 1.05 * background_k || t < partition.lowest_k() || t > partition.highest_k()) continue;
     ColumnAtTemperature column{t, kNotKnown, kNotKnown, from_limits};
     for (const PreparedLine& line : lines) {
-      const bool serves =
-          from_limits ? line.result.limit && line.result.intensity_k_km_s > 0.0 : line.result.used;
+      const bool serves = from_limits ? is_usable_limit(line.result) : line.result.used;
       const double contrast = background_contrast(line.constants.frequency_hz, t, background_k);
       if (!serves || !(contrast > 0.0)) continue;
       const double n = std::exp(line.ln_thin - std::log(contrast) + partition.at(t).ln_q +
@@ -143,10 +151,11 @@ void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
 
 void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
                         const PartitionFunction& partition, const RunOptions& options) {
-  const bool any_limit = std::any_of(lines.begin(), lines.end(), [](const PreparedLine& line) {
-    return line.result.limit && line.result.intensity_k_km_s > 0.0;
-  });
-  if (!any_limit) {
+  const bool any_limit = std::any_of(lines.begin(), lines.end(),
+                                     [](const PreparedLine& line) { return is_usable_limit(line.result); });
+  const bool any_measured =
+      std::any_of(lines.begin(), lines.end(), [](const PreparedLine& line) { return !line.result.limit; });
+  if (!any_limit || any_measured) {
     result.status = Status::no_lines;
     result.message = "the reasons stand beside the lines that are not used";
     return;

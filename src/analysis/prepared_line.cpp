@@ -16,8 +16,8 @@ namespace {
 
 constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 
-double needed(const std::optional<double>& in_row, const std::optional<double>& in_options, const Place& place,
-              const char* what, const char* advice) {
+double needed(const std::optional<double>& in_row, const std::optional<double>& in_options,
+              const Place& place, const char* what, const char* advice) {
   if (in_row) return *in_row;
   if (in_options) return *in_options;
   throw InputError(place, {fmt::format("the row has no {}", what), "one for every line", advice});
@@ -35,11 +35,12 @@ double main_beam_factor(const IntensityRow& row, double frequency_hz, const RunO
     case IntensityScale::main_beam:
       return 1.0;
     case IntensityScale::antenna: {
-      const char* advice = "give the options 'forward_efficiency' and 'main_beam_efficiency', or such columns";
+      const char* advice =
+          "give the options 'forward_efficiency' and 'main_beam_efficiency', or such columns";
       const double forward =
           needed(row.forward_efficiency, options.forward_efficiency, place, "forward efficiency", advice);
-      const double main_beam =
-          needed(row.main_beam_efficiency, options.main_beam_efficiency, place, "main-beam efficiency", advice);
+      const double main_beam = needed(row.main_beam_efficiency, options.main_beam_efficiency, place,
+                                      "main-beam efficiency", advice);
       if (main_beam > forward) {
         throw InputError(place, {fmt::format("main-beam efficiency {:g} above the forward efficiency {:g}",
                                              main_beam, forward),
@@ -62,8 +63,8 @@ double filling_of(const IntensityRow& row, const RunOptions& options, const Plac
                                                    : gaussian_filling(*options.source_size_rad, beam);
 }
 
-/// Intensities that no telescope gives, and whose squares would leave the range of a double, are a slip of unit
-/// or of typing.
+/// Intensities that no telescope gives, and whose squares would leave the range of a double, are a slip of
+/// unit or of typing.
 void require_plausible(const LineResult& line, const Place& place) {
   constexpr double kLeast = 1e-12;
   constexpr double kMost = 1e12;
@@ -77,6 +78,18 @@ void require_plausible(const LineResult& line, const Place& place) {
   if (!std::isnan(sigma) && !(sigma >= kLeast && sigma <= kMost)) refuse("an intensity error", sigma);
 }
 
+/// Noise that vanishes beside a calibration error shared by lines leaves a covariance that cannot be
+/// inverted.
+void require_distinguishable(const LineResult& line, const Place& place) {
+  constexpr double kLeast = 1e-6;
+  const double calibration = line.calibration_error * std::abs(line.intensity_k_km_s);
+  if (!(line.intensity_error_k_km_s < kLeast * calibration)) return;
+  throw InputError(
+      place, {fmt::format("an intensity error of {:g} K km/s beside a calibration error of {:g} K km/s",
+                          line.intensity_error_k_km_s, calibration),
+              fmt::format("noise of at least {:g} of it", kLeast), "check value and unit of the error"});
+}
+
 bool is_listed(const std::vector<std::string>& labels, const std::string& transition) {
   return std::any_of(labels.begin(), labels.end(), [&](const std::string& label) {
     return normalised_label(label) == normalised_label(transition);
@@ -87,14 +100,20 @@ bool is_inside(const std::optional<QuantityRange>& range, double value) {
   return !range || (value >= range->low && value <= range->high);
 }
 
-/// Why a line is not fitted, or an empty text.
-std::string reason_to_leave_out(const LineResult& line, const RunOptions& options) {
+/// Which option chooses other lines than this one, or an empty text.
+std::string reason_excluded(const LineResult& line, const RunOptions& options) {
   if (!options.only_lines.empty() && !is_listed(options.only_lines, line.transition)) {
     return "not among the lines of the option 'only'";
   }
   if (is_listed(options.without_lines, line.transition)) return "left out by the option 'without'";
   if (!is_inside(options.upper_energy_k, line.upper_energy_k)) return "outside the option 'upper_energy'";
   if (!is_inside(options.frequency_hz, line.frequency_mhz * 1e6)) return "outside the option 'frequency'";
+  return {};
+}
+
+/// Why a line is not fitted, or an empty text.
+std::string reason_to_leave_out(const LineResult& line, const RunOptions& options) {
+  if (line.excluded) return reason_excluded(line, options);
   if (!fits_intensities(options)) {
     if (line.limit) return "an upper limit: compared with the model, not fitted";
     if (!line.blend.empty()) return "a blend: the straight line cannot part it";
@@ -102,7 +121,8 @@ std::string reason_to_leave_out(const LineResult& line, const RunOptions& option
   }
   if (line.limit) return {};
   const double snr = line.intensity_k_km_s / line.intensity_error_k_km_s;
-  if (options.least_snr > 0.0 && snr < options.least_snr) return fmt::format("W/sigma = {:.1f}, below the option 'least_snr'", snr);
+  if (options.least_snr > 0.0 && snr < options.least_snr)
+    return fmt::format("W/sigma = {:.1f}, below the option 'least_snr'", snr);
   return {};
 }
 
@@ -112,9 +132,9 @@ void check_labels_exist(const std::vector<std::string>& labels, const char* opti
   for (const PreparedLine& line : lines) known.push_back(line.result.transition);
   for (const std::string& label : labels) {
     if (!is_listed(known, label)) {
-      throw InputError(Place{table_file}, {fmt::format("option '{}': the table has no line '{}'", option,
-                                                       printable(label)),
-                                           "one of: " + listed(known), did_you_mean(label, known)});
+      throw InputError(Place{table_file},
+                       {fmt::format("option '{}': the table has no line '{}'", option, printable(label)),
+                        "one of: " + listed(known), did_you_mean(label, known)});
     }
   }
 }
@@ -142,6 +162,7 @@ PreparedLine prepare(const MatchedRow& matched, const Species& species, const Ru
   require_plausible(result, place);
   result.calibration_error = row.calibration_error.value_or(options.calibration_error.value_or(0.0));
   result.calibration_group = row.calibration_group.value_or("");
+  require_distinguishable(result, place);
   result.limit = row.is_limit;
   result.blend = row.blend.value_or("");
   result.filling = filling_of(row, options, place);
@@ -151,6 +172,7 @@ PreparedLine prepare(const MatchedRow& matched, const Species& species, const Ru
   result.fwhm_km_s = row.fwhm_km_s.value_or(options.fwhm_km_s.value_or(kNotKnown));
   result.table_line = row.line_number;
   result.note = row.note.value_or("");
+  result.excluded = !reason_excluded(result, options).empty();
   result.why_unused = reason_to_leave_out(result, options);
   result.used = result.why_unused.empty();
 

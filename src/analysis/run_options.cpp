@@ -22,6 +22,20 @@ double positive(const std::string& text, Dimension dimension) {
   return value;
 }
 
+/// An error of a whole intensity or more leaves nothing to fit; 0 takes back what a description says.
+void set_calibration_error(RunOptions& options, const std::string& text) {
+  const double value = parse_quantity(text, Dimension::dimensionless);
+  if (!(value >= 0.0 && value < 1.0)) {
+    throw InputError(
+        {fmt::format("'{}' is outside 0 to 1", text), "a fraction from 0 to below 1, or percent, as '10 %'"});
+  }
+  options.calibration_error = value;
+}
+
+std::string show_calibration_error(const RunOptions& options) {
+  return options.calibration_error ? show_number(*options.calibration_error, "") : "not given";
+}
+
 double fraction(const std::string& text) {
   const double value = parse_quantity(text, Dimension::dimensionless);
   if (!(value > 0.0 && value <= 1.0)) {
@@ -124,8 +138,10 @@ void set_background(RunOptions& options, const std::string& text) {
     return;
   }
   options.background_k = parse_quantity(text, Dimension::temperature);
-  if (options.background_k < 0.0) {
-    throw InputError({fmt::format("'{}' is below zero", text), "a background of 0 K or more"});
+  constexpr double kMostK = 1000.0;
+  if (!(options.background_k >= 0.0 && options.background_k <= kMostK)) {
+    throw InputError({fmt::format("'{}' is outside 0 to {:g} K", text, kMostK),
+                      "a background of 0 K or more, as '2.7255 K'"});
   }
 }
 
@@ -142,7 +158,15 @@ void set_source_size(RunOptions& options, const std::string& text) {
   const std::string word = lower_case(trimmed(text));
   options.source_size_free = word == "free";
   options.source_size_rad.reset();
-  if (word != "free" && word != "none") options.source_size_rad = positive(text, Dimension::angle);
+  if (word == "free" || word == "none") return;
+  const double size_rad = positive(text, Dimension::angle);
+  constexpr double kLeastArcsec = 1e-6;
+  constexpr double kMostArcsec = 3600.0 * 90.0;
+  if (!(size_rad >= kLeastArcsec * kRadPerArcsec && size_rad <= kMostArcsec * kRadPerArcsec)) {
+    throw InputError(
+        {fmt::format("'{}' is no size of a source", text), "1e-6 arcsec to 90 deg, as '8 arcsec'"});
+  }
+  options.source_size_rad = size_rad;
 }
 
 std::string show_source_size(const RunOptions& options) {
@@ -278,8 +302,8 @@ std::vector<RunOption> make_table() {
                         &RunOptions::beam_fwhm_rad, kRadPerArcsec, "arcsec"}));
   table.push_back(make({"line_width", "3.2 km/s", "FWHM of the lines, for rows that give none; for opacities",
                         Dimension::velocity, &RunOptions::fwhm_km_s, 1.0, "km/s"}));
-  table.push_back(make({"calibration_error", "10 %", "calibration error, for rows that give none",
-                        Dimension::dimensionless, &RunOptions::calibration_error, 1.0, ""}));
+  table.push_back({"calibration_error", "10 %", "calibration error, for rows that give none",
+                   set_calibration_error, show_calibration_error});
   table.push_back({"calibration_shared", "yes",
                    "rows without a calibration group share one factor: yes or no",
                    [](RunOptions& o, const std::string& text) { o.calibration_shared = yes_or_no(text); },

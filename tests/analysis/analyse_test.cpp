@@ -248,6 +248,38 @@ TEST(Analyse, WhatCannotBeAnsweredHasAStatusOfItsOwn) {
   EXPECT_EQ(analyse(species, limits, {}).status, Status::only_limits);
 }
 
+/// Until 2026-12-01 a limit that 'without' had put aside still set the limit of N, and detections that an option
+/// had put aside were called undetected.
+TEST(Analyse, LinesPutAsideSetNoLimitAndAreNotCalledUndetected) {
+  const Species species = rotor();
+  IntensityTable limits = table_of(species, {}, 4);
+  for (auto& row : limits.rows) row.is_limit = true;
+  RunOptions options;
+  options.temperature_k = 40.0;
+  const double honest = analyse(species, limits, options).columns_at_temperatures.at(0).column_density_cm2;
+  limits.rows[2].intensity *= 1e-3;  // a slip of the observer's
+  const Result all = analyse(species, limits, options);
+  EXPECT_NEAR(all.columns_at_temperatures.at(0).column_density_cm2 / honest, 1e-3, 1e-9);
+  options.without_lines = {all.lines[2].transition};
+  const Result without = analyse(species, limits, options);
+  EXPECT_NEAR(without.columns_at_temperatures.at(0).column_density_cm2 / honest, 1.0, 1e-9);
+
+  IntensityTable detected = table_of(species, {}, 4);
+  detected.rows[3].is_limit = true;
+  RunOptions demanding;
+  demanding.least_snr = 1e9;
+  EXPECT_EQ(analyse(species, detected, demanding).status, Status::no_lines);
+}
+
+TEST(Analyse, RefusesNoiseThatVanishesBesideTheCalibration) {
+  const Species species = rotor();
+  IntensityTable table = table_of(species, {}, 4);
+  for (auto& row : table.rows) row.intensity_sigma = 1e-9 * row.intensity;
+  RunOptions options;
+  options.calibration_error = 0.1;
+  EXPECT_THROW((void)analyse(species, table, options), InputError);
+}
+
 TEST(Analyse, LimitsAloneBoundNAtEachTemperatureOrAtTheGivenOne) {
   const Species species = rotor();
   IntensityTable limits = table_of(species, {}, 4);

@@ -56,6 +56,7 @@ struct LineResult {
   double calibration_error = 0.0;             ///< fraction
   std::string calibration_group;              ///< empty: its own
   bool limit = false;
+  bool excluded = false;  ///< an option of the user's chooses other lines
   std::string blend;  ///< empty where the line stands alone
   double ln_nu_gu = kNotKnown;
   double ln_nu_gu_error = kNotKnown;  ///< noise and calibration together
