@@ -5,9 +5,11 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <set>
 
 #include <trotline/inference/lte_checks.hpp>
 
+#include "check_hints.hpp"
 #include "collision_rates.hpp"
 #include "line_divisions.hpp"
 
@@ -17,6 +19,8 @@ namespace {
 // At tau0 = 0.3 the Gaussian curve of growth takes 10 % off a line (PHYSICS: C = 1.10).
 constexpr double kThinOpacity = 0.3;
 constexpr double kMostRelativeError = 0.5;
+// Deeper, a Gaussian line is saturated over more than its FWHM: what is left to set N are the wings.
+constexpr double kWingOpacity = 10.0;
 
 Outcome outcome_of(CheckOutcome outcome) {
   switch (outcome) {
@@ -92,6 +96,10 @@ Check largest_opacity(const Result& result, Opacity opacity) {
   if (opacity != Opacity::thin) {
     check.outcome = Outcome::pass;
     check.meaning += "; the fit takes it into account";
+    if (most->optical_depth > kWingOpacity) {
+      check.meaning +=
+          ", but N then rests on the wings of the profile, taken as Gaussian: a thinner isotopologue is safer";
+    }
   } else {
     check.outcome = most->optical_depth <= kThinOpacity ? Outcome::pass : Outcome::fail;
     if (check.outcome == Outcome::fail) check.meaning += "; thin lines are assumed, so N is too low";
@@ -112,17 +120,18 @@ std::string transition_of_datum(const FittedModel& fitted, const std::vector<Pre
   return fmt::format("{}", fmt::join(names, "+"));
 }
 
-Check goodness_of_fit(const LteCheck& from) {
+Check goodness_of_fit(const LteCheck& from, const std::string& opacity_hint) {
   Check check{"goodness of fit", from.p_value, outcome_of(from.outcome),
               "chi2 needs more lines than fitted parameters"};
   if (from.outcome != CheckOutcome::not_testable) {
     check.meaning = fmt::format("chance alone would scatter the lines more than this with probability {:.2g}",
                                 from.p_value);
   }
+  if (from.outcome == CheckOutcome::fail) check.meaning += opacity_hint;
   return check;
 }
 
-Check curvature(const LteCheck& from) {
+Check curvature(const LteCheck& from, const std::string& opacity_hint) {
   Check check{"curvature", from.figure, outcome_of(from.outcome),
               "a curve needs three energies and a line to spare"};
   if (from.outcome == CheckOutcome::not_testable) return check;
@@ -131,6 +140,7 @@ Check curvature(const LteCheck& from) {
     check.meaning += from.figure > 0.0
                          ? "; high levels hold more than one temperature allows: a warmer component?"
                          : "; high levels hold less than one temperature allows: not thermalised?";
+    check.meaning += opacity_hint;
   }
   return check;
 }
@@ -155,21 +165,25 @@ std::string subset_text(const std::vector<SubsetTemperature>& subsets, const std
   return fmt::format("{}", fmt::join(texts, ", "));
 }
 
-Check groups(const Result& result, const LteCheck& from) {
+Check groups(const Result& result, const LteCheck& from, const std::vector<PreparedLine>& lines,
+             const RunOptions& options) {
   Check check{"temperature by " + from.grouping, from.figure, outcome_of(from.outcome),
               "needs lines of different energy in two groups, and a line to spare"};
   if (from.outcome == CheckOutcome::not_testable) return check;
   check.meaning = chance_text(from.p_value);
   const std::string temperatures = subset_text(result.subset_temperatures, from.grouping);
   if (!temperatures.empty()) check.meaning = temperatures + "; " + check.meaning;
+  if (from.outcome == CheckOutcome::fail && temperatures_agree(result.subset_temperatures, from.grouping))
+    check.meaning += offset_hint(from.grouping, result.subset_temperatures, lines, options);
   return check;
 }
 
-Check trend(const std::string& name, const LteCheck& from, const char* why_not, const char* cause) {
+Check trend(const std::string& name, const LteCheck& from, const char* why_not,
+            const std::string& cause) {
   Check check{name, from.figure, outcome_of(from.outcome), why_not};
   if (from.outcome == CheckOutcome::not_testable) return check;
   check.meaning = fmt::format("the trend in its errors; {}", chance_text(from.p_value));
-  if (from.outcome == CheckOutcome::fail) check.meaning += fmt::format("; {}", cause);
+  if (from.outcome == CheckOutcome::fail) check.meaning += cause;
   return check;
 }
 
@@ -254,6 +268,19 @@ Check critical_density(const Result& result, const RunOptions& options) {
 // ---- putting it together
 // -----------------------------------------------------------------------------------
 
+/// Whether T is held without one line: by lines of two energies or more, and to better than its own size.
+bool holds_temperature(const LeaveOneOut& row, const FittedModel& fitted,
+                       const std::vector<PreparedLine>& lines) {
+  std::set<long> energies;  // in steps of 1e-3 K
+  for (std::size_t datum = 0; datum < fitted.setup.rows_of_datum.size(); ++datum) {
+    if (static_cast<int>(datum) == row.datum || fitted.setup.problem.data[datum].is_limit) continue;
+    for (const std::size_t line : fitted.setup.rows_of_datum[datum])
+      energies.insert(std::lround(1e3 * lines[line].constants.upper_energy_k));
+  }
+  const double relative = row.temperature_sigma_k / row.temperature_k;
+  return energies.size() > 1 && relative > 0.0 && relative < kLteVagueLnT;
+}
+
 LteReport lte_report(Result& result, const FittedModel& fitted, const std::vector<PreparedLine>& lines) {
   std::vector<std::size_t> first_rows;
   for (const auto& rows : fitted.setup.rows_of_datum) first_rows.push_back(rows.front());
@@ -262,6 +289,7 @@ LteReport lte_report(Result& result, const FittedModel& fitted, const std::vecto
   for (const LineDivision& division : divisions) options.groupings.push_back({division.name, division.group});
   LteReport report = check_lte(*fitted.likelihood, fitted.fit, options);
   for (const LeaveOneOut& row : report.leave_one_out) {
+    if (!result.temperature_fixed && !holds_temperature(row, fitted, lines)) continue;
     result.leave_one_out.push_back({transition_of_datum(fitted, lines, row.datum), row.standardised_residual,
                                     row.temperature_k, row.temperature_sigma_k,
                                     row.ln_column / std::numbers::ln10});
@@ -275,30 +303,34 @@ LteReport lte_report(Result& result, const FittedModel& fitted, const std::vecto
   return report;
 }
 
-void add_lte_checks(Result& result, const FittedModel& fitted, const std::vector<PreparedLine>& lines) {
+void add_lte_checks(Result& result, const FittedModel& fitted, const std::vector<PreparedLine>& lines,
+                    const RunOptions& options) {
+  const std::string opacity_hint =
+      fitted.setup.kind.opacity == Opacity::thin ? unseen_opacity_hint(result, options) : "";
   const LteReport report = lte_report(result, fitted, lines);
   for (const LteCheck& check : report.checks) {
     switch (check.kind) {
       case LteCheckKind::goodness_of_fit:
-        result.checks.push_back(goodness_of_fit(check));
+        result.checks.push_back(goodness_of_fit(check, opacity_hint));
         break;
       case LteCheckKind::curvature:
-        result.checks.push_back(curvature(check));
+        result.checks.push_back(curvature(check, opacity_hint));
         break;
       case LteCheckKind::outlier:
         result.checks.push_back(outlier(check, fitted, lines));
         break;
       case LteCheckKind::groups:
-        result.checks.push_back(groups(result, check));
+        result.checks.push_back(groups(result, check, lines, options));
         break;
       case LteCheckKind::opacity_trend:
         result.checks.push_back(trend("residuals against opacity", check,
                                       "needs line widths, and lines opaque enough to show it",
-                                      "the lines are more, or less, opaque than the model has them"));
+                                      "; the lines are more, or less, opaque than the model has them"));
         break;
       case LteCheckKind::beam_trend:
-        result.checks.push_back(trend("residuals against beam", check, "needs beams of different size",
-                                      "the source fills the beams otherwise than the model has it"));
+        result.checks.push_back(trend("residuals against beam", check,
+                                      "needs a beam for every line, of different size, and a line to spare",
+                                      beam_hint(check.figure, options)));
         break;
       case LteCheckKind::limits:
       case LteCheckKind::collisions:
@@ -323,15 +355,21 @@ std::string verdict_of(const Result& result, const RunOptions& options) {
       failed.push_back(check.name);
     }
   }
-  if (!failed.empty()) {
+  const bool neglected = failed == std::vector<std::string>{"opacity"};
+  if (!failed.empty() && !neglected) {
     const char* const verb = options.components > 1 ? "do" : "does";
     return fmt::format("{} {} not describe the lines (failed: {})", model, verb, fmt::join(failed, ", "));
   }
   const Check is_set = temperature_set(result);
   if (!fit_testable || !(result.temperature_fixed || is_set.outcome == Outcome::pass))
     return "these lines cannot tell";
-  return fmt::format("{} describe{} the lines{}", model, options.components > 1 ? "" : "s",
-                     subcritical ? ", but at the density given it need not be that of the gas" : "");
+  std::string text = fmt::format("{} describe{} the lines{}", model, options.components > 1 ? "" : "s",
+                                 subcritical ? ", but at the density given it need not be that of the gas" : "");
+  if (neglected) {
+    text += fmt::format(", but they are opaque: N is too low and T may be off (use {})",
+                        neglected_opacity_hint(options));
+  }
+  return text;
 }
 
 }  // namespace
@@ -344,7 +382,7 @@ void check_assumptions(Result& result, const std::vector<PreparedLine>& lines, c
     FittedModel own;
     if (!fitted.likelihood) own = refitted(result, lines, species, options, opacity);
     if (robust) own = with_gaussian_noise(fitted);
-    add_lte_checks(result, own.likelihood ? own : fitted, lines);
+    add_lte_checks(result, own.likelihood ? own : fitted, lines, options);
   }
   result.checks.insert(result.checks.begin() + (result.checks.empty() ? 0 : 1), temperature_set(result));
   result.checks.push_back(largest_opacity(result, opacity));

@@ -121,8 +121,9 @@ ModelLine model_line(const PreparedLine& line, const PreparedLine& first, int da
       throw InputError({named(line.result) + " has no beam, which a source size needs", "one for every line",
                         "add a column 'beam_fwhm [arcsec]' or the option 'beam'"});
     }
-    result.beam_fwhm_arcsec = line.result.beam_fwhm_arcsec;
   }
+  // Without a source size every beam is filled, whatever its size; the checks look for a trend with it.
+  if (line.result.beam_fwhm_arcsec > 0.0) result.beam_fwhm_arcsec = line.result.beam_fwhm_arcsec;
   return result;
 }
 

@@ -203,10 +203,12 @@ TEST(LikelihoodMethod, SpinIsomersApartEachHaveTheirN) {
   EXPECT_NEAR(apart.components[0].column_density_cm2.value / (2e12 * share), 1.0, 2e-3);
   EXPECT_NEAR(apart.components[1].column_density_cm2.value / (1e12 * (1.0 - share)), 1.0, 2e-3);
   EXPECT_THAT(refusal(rotor(), table_of(rotor(), {{40.0, 1e12}}, 4), options), HasSubstr("no spin isomers"));
-  // Together they do not fit, and the check says so.
+  // Together they do not fit, and the check says so: the N differ and not the T.
   const Result together = analyse(species, table, by("likelihood"));
   EXPECT_EQ(check_named(together, "temperature by spin isomer").outcome, Outcome::fail);
   EXPECT_EQ(together.subset_temperatures.size() >= 2, true);
+  EXPECT_THAT(check_named(together, "temperature by spin isomer").meaning,
+              HasSubstr("ortho and para differ in N, not in T: try --isomers apart"));
 }
 
 TEST(LikelihoodMethod, RobustForgivesOneOutlierAndTheChecksNameIt) {

@@ -24,7 +24,7 @@ struct Case {
 struct Rates {
   int tables = 0;
   int answered = 0;                     ///< status done
-  int caught = 0;                       ///< the verdict: one temperature does not describe the lines
+  int caught = 0;                       ///< the verdict: one temperature does not describe the lines, or N is too low
   int cannot_tell = 0;                  ///< the verdict: these lines cannot tell
   std::map<std::string, int> by_check;  ///< how often each check failed
 };
@@ -189,7 +189,8 @@ inline Rates rates_of(const Case& one, int tables, std::uint64_t seed) {
     const Result result = analyse(species, observed(noiseless, engine), options);
     ++rates.tables;
     rates.answered += result.status == Status::done;
-    rates.caught += result.verdict.find("not describe") != std::string::npos;
+    rates.caught += result.verdict.find("not describe") != std::string::npos ||
+                    result.verdict.find("N is too low") != std::string::npos;
     rates.cannot_tell += result.verdict == "these lines cannot tell";
     for (const Check& check : result.checks) {
       if (check.outcome == Outcome::fail) ++rates.by_check[check.name];
