@@ -152,6 +152,36 @@ void add_estimates(Page& page, const Result& result) {
   }
 }
 
+/// Place of ln N of an isomer among the parameters, or their number.
+std::size_t column_parameter(const Result& result, const std::string& isomer) {
+  const auto found =
+      std::find_if(result.parameters.begin(), result.parameters.end(), [&](const FittedParameter& parameter) {
+        return parameter.name == "ln_column_density_cm2_" + isomer;
+      });
+  return static_cast<std::size_t>(found - result.parameters.begin());
+}
+
+/// Ratios of the N of spin isomers to that of the last; the error from their covariance, that of T in it.
+void add_isomer_ratios(Page& page, const Result& result) {
+  if (result.status != Status::done || result.components.size() < 2) return;
+  if (result.parameter_covariance.size() != result.parameters.size()) return;
+  const std::string& last = result.components.back().name;
+  const std::size_t b = column_parameter(result, last);
+  if (b == result.parameters.size()) return;
+  const auto& covariance = result.parameter_covariance;
+  for (std::size_t i = 0; i + 1 < result.components.size(); ++i) {
+    const std::string& name = result.components[i].name;
+    const std::size_t a = column_parameter(result, name);
+    if (a == result.parameters.size()) return;
+    const double ratio = std::exp(result.parameters[a].value - result.parameters[b].value);
+    const double variance = covariance[a][a] + covariance[b][b] - 2.0 * covariance[a][b];
+    if (!std::isfinite(ratio) || !(variance > 0.0)) continue;
+    page.entry(i == 0 ? "ratio" : "",
+               fmt::format("N({})/N({}) = {}", display_text(name), display_text(last),
+                           value_with_error(ratio, ratio * std::sqrt(variance), page.glyphs())));
+  }
+}
+
 /// The parts of an answer that has several, one row each.
 void add_components(Page& page, const Result& result) {
   if (result.components.empty()) return;
@@ -324,6 +354,7 @@ void add_answer(Page& page, const Result& result) {
   if (!message.empty()) page.entry("", message);
   add_estimates(page, result);
   add_components(page, result);
+  add_isomer_ratios(page, result);
   add_posterior(page, result);
   add_columns_at_temperatures(page, result);
   if (result.status == Status::not_thermal || result.status == Status::unbounded) {

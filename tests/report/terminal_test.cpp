@@ -2,6 +2,7 @@
 #include <gtest/gtest.h>
 
 #include <algorithm>
+#include <cmath>
 #include <regex>
 #include <sstream>
 
@@ -147,6 +148,22 @@ TEST(TerminalReport, ListsWhatWasNotUsedWithItsReasonAndPlace) {
   const std::string text = terminal_report(invented_result({.unused = 2}));
   EXPECT_THAT(text, HasSubstr("5(0)–4(0) (table line 2), 5(1)–4(1) (table line 3) – left out by request"));
   EXPECT_THAT(terminal_report(invented_result()), Not(HasSubstr("Not used")));
+}
+
+TEST(TerminalReport, GivesTheRatioOfSpinIsomersWithTheirCovariance) {
+  Result result = invented_result();
+  const double t = 40.0;
+  result.components = {{"ortho", {t, 1.0}, {3e12, 3e11}, {}}, {"para", {t, 1.0}, {1e12, 1e11}, {}}};
+  result.parameters = {{"ln_column_density_cm2_ortho", std::log(3e12), 0.10},
+                       {"ln_column_density_cm2_para", std::log(1e12), 0.10},
+                       {"ln_temperature_k", std::log(t), 0.025}};
+  result.parameter_covariance = {{0.0100, 0.0082, 0.0}, {0.0082, 0.0100, 0.0}, {0.0, 0.0, 0.000625}};
+  // 3 sqrt(0.01 + 0.01 - 2 0.0082) = 0.18 by hand; without the covariance it were 0.42.
+  EXPECT_THAT(terminal_report(result), HasSubstr("N(ortho)/N(para) = 3.00 ± 0.18"));
+  result.parameter_covariance[0][1] = result.parameter_covariance[1][0] = kNotKnown;
+  EXPECT_THAT(terminal_report(result), Not(HasSubstr("N(ortho)/N(para)")));
+  result.components.clear();
+  EXPECT_THAT(terminal_report(result), Not(HasSubstr("N(ortho)/N(para)")));
 }
 
 TEST(TerminalReport, ListsChecksAndWarnings) {
