@@ -37,7 +37,7 @@ TEST(RunOptions, QuantitiesNeedTheirUnitAndDimension) {
   EXPECT_THAT(refusal("source_size", "8 K"), HasSubstr("a unit of a temperature"));
   EXPECT_THAT(refusal("beam", "0 arcsec"), HasSubstr("not above zero"));
   EXPECT_THAT(refusal("temperature", "-5 K"), HasSubstr("not above zero"));
-  EXPECT_THAT(refusal("background", "-1 K"), HasSubstr("below zero"));
+  EXPECT_THAT(refusal("background", "-1 K"), HasSubstr("outside 0 to 1000 K"));
   EXPECT_THAT(refusal("background", "nan K"), HasSubstr("finite"));
   EXPECT_THAT(refusal("calibration_error", "130 %"), HasSubstr("outside 0 to 1"));
   EXPECT_THAT(refusal("upper_energy", "300 K..10 K"), HasSubstr("lower value first"));
