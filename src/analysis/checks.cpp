@@ -330,7 +330,7 @@ void add_lte_checks(Result& result, const FittedModel& fitted, const std::vector
       case LteCheckKind::beam_trend:
         result.checks.push_back(trend("residuals against beam", check,
                                       "needs a beam for every line, of different size, and a line to spare",
-                                      beam_hint(check.figure, options)));
+                                      beam_hint(check.figure, options) + opacity_hint));
         break;
       case LteCheckKind::limits:
       case LteCheckKind::collisions:

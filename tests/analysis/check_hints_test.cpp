@@ -81,6 +81,11 @@ TEST(BeamCheck, RunsWithoutASourceSizeAndNamesDilution) {
   const Result wide = analyse(species, diluted(species, 0.0), by("line"));
   EXPECT_EQ(check_named(wide, "residuals against beam").outcome, Outcome::pass);
 
+  EXPECT_THAT(fails.meaning, Not(HasSubstr("opaque")));  // widths are known
+  const Result blind = analyse(species, without_widths(diluted(species, 10.0)), by("line"));
+  EXPECT_THAT(check_named(blind, "residuals against beam").meaning,
+              AllOf(HasSubstr("beam dilution"), HasSubstr("low lines are opaque")));
+
   // The cure cures.
   RunOptions free = by("likelihood");
   free.source_size_free = true;
