@@ -239,6 +239,23 @@ void add_posterior(Result& result, FittedModel& fitted, const RunOptions& option
     summary.draws.push_back(numbers(sample.draws.row(k)));
 }
 
+/// Optical depths come from the width that a line would have were it thin, and a measured one is larger.
+void warn_of_broadened_widths(Result& result, const std::vector<PreparedLine>& lines, const RunOptions& options) {
+  constexpr double kOpaque = 1.0;
+  double largest = 0.0;
+  for (const PreparedLine& line : lines) {
+    const bool is_from_table = line.result.fwhm_km_s > 0.0 && line.result.fwhm_km_s != options.fwhm_km_s;
+    if (line.result.used && is_from_table && line.result.optical_depth > kOpaque) {
+      largest = std::max(largest, line.result.optical_depth);
+    }
+  }
+  if (largest == 0.0) return;
+  result.warnings.push_back(fmt::format(
+      "optical depths reach {:.2g}, from widths of the table: 'fwhm' is the width that a line would have were it "
+      "thin. A width measured on an opaque line is broadened and shifts T and N; take that of a thin line",
+      largest));
+}
+
 }  // namespace
 
 FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, const Species& species,
@@ -279,7 +296,9 @@ FittedModel fit_by_likelihood(Result& result, std::vector<PreparedLine>& lines, 
   if (result.status == Status::not_converged) return fitted;
   if (options.intervals == "posterior") add_posterior(result, fitted, options);
   set_estimates(result, fitted, species, options, result.status != Status::done);
-  if (result.status == Status::done) set_predictions(result, fitted, lines, options);
+  if (result.status != Status::done) return fitted;
+  set_predictions(result, fitted, lines, options);
+  warn_of_broadened_widths(result, lines, options);
   return fitted;
 }
 

@@ -61,6 +61,23 @@ TEST(LikelihoodMethod, ReturnsTheTruthOfNoiselessLinesFromThinToOpaque) {
   }
 }
 
+TEST(LikelihoodMethod, SaysThatWidthsOfTheTableAreThoseOfThinLines) {
+  const Species species = rotor();
+  const auto warned = Contains(HasSubstr("'fwhm' is the width that a line would have were it thin"));
+  const auto warnings = [&](double tau0, const RunOptions& options, bool with_widths) {
+    IntensityTable table = table_of(species, {{40.0, column_for(species, tau0, 40.0, 8)}}, 8);
+    for (auto& row : table.rows) {
+      if (!with_widths) row.fwhm_km_s.reset();
+    }
+    return analyse(species, table, options).warnings;
+  };
+  EXPECT_THAT(warnings(5.8, by("likelihood"), true), warned);
+  EXPECT_THAT(warnings(0.3, by("likelihood"), true), ::testing::Not(warned));
+  RunOptions stated = by("likelihood");
+  stated.fwhm_km_s = kFwhmKmS;
+  EXPECT_THAT(warnings(5.8, stated, false), ::testing::Not(warned));
+}
+
 TEST(LikelihoodMethod, AgreesWithTheStraightLineForBrightThinLines) {
   const Species species = rotor();
   IntensityTable table = table_of(species, {{40.0, 1e11}}, 8, 0.002);
