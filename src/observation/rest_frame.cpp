@@ -156,7 +156,7 @@ double lsrk_frequency_ratio(RestFrame frame, const ObservingCircumstances& circu
   if (frame == RestFrame::unknown) {
     throw InputError(
         {"the frame of the spectral axis is not given (SPECSYS, or VELREF, or a CTYPE such as VELO-LSR)",
-         "a header that names it", "state it when you know it"});
+         "a header that names it", "when you know it, --frame states it, as --frame LSRK"});
   }
   if (!circumstances.direction) refuse(frame, "the direction of the source (celestial axes, or RA and DEC)");
   const Eigen::Vector3d towards =

@@ -219,7 +219,7 @@ double rest_frequency(const HeaderCards& cards, const AxisOptions& options) {
     constexpr double kLeastHz = 1e6;  // below lies no line: a rest frequency in other units, or none at all
     if (*frequency < kLeastHz) {
       cards.refuse(fmt::format("keyword RESTFRQ is {} Hz", *frequency),
-                   "the rest frequency of the line in Hz", "give the rest frequency when you know it");
+                   "the rest frequency of the line in Hz", "when you know it, --rest-frequency states it");
     }
     return *frequency;
   }
@@ -319,7 +319,7 @@ class AxisReader {
     const std::string_view kind = std::string_view(result_.type).substr(0, 4);
     if (needs_rest_frequency(kind) && axis->restfrq == 0.0) {
       cards_.refuse(fmt::format("keyword RESTFRQ is missing, and the axis is in {}", result_.type),
-                    "a rest frequency for an axis of velocities", "give the rest frequency when you know it");
+                    "a rest frequency for an axis of velocities", "when you know it, --rest-frequency states it");
     }
     if (axis->restfrq > 0.0) result_.rest_frequency_hz = axis->restfrq;
     set(axis, written);

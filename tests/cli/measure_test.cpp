@@ -141,6 +141,14 @@ TEST_F(Measure, DrawsPanelsWithAModelOverThem) {
               AllOf(HasSubstr("lines.ecsv"), HasSubstr("result.json")));
 }
 
+TEST_F(Measure, MissingUnitsAndFramesNameTheirOptions) {
+  const std::string rows = "1,0.1\n2,0.2\n3,0.1\n";
+  const std::string no_frame = folder_.file("frame.csv", "# rest_frequency: 115.2712 GHz\nvelocity [km/s],intensity [K]\n" + rows);
+  const std::string no_unit = folder_.file("unit.csv", "# rest_frequency: 115.2712 GHz\nv_lsr [km/s],intensity\n" + rows);
+  EXPECT_THAT(run({"measure", no_frame, "--species", "CO", "--vlsr", "2 km/s"}).err, HasSubstr("--frame LSRK"));
+  EXPECT_THAT(run({"measure", no_unit, "--species", "CO", "--vlsr", "2 km/s"}).err, HasSubstr("--unit K"));
+}
+
 struct WrongCall {
   std::vector<std::string> more;
   ExitCode code;
