@@ -240,7 +240,8 @@ void add_posterior(Result& result, FittedModel& fitted, const RunOptions& option
 }
 
 /// Optical depths come from the width that a line would have were it thin, and a measured one is larger.
-void warn_of_broadened_widths(Result& result, const std::vector<PreparedLine>& lines, const RunOptions& options) {
+void warn_of_broadened_widths(Result& result, const std::vector<PreparedLine>& lines,
+                              const RunOptions& options) {
   constexpr double kOpaque = 1.0;
   double largest = 0.0;
   for (const PreparedLine& line : lines) {
@@ -251,7 +252,8 @@ void warn_of_broadened_widths(Result& result, const std::vector<PreparedLine>& l
   }
   if (largest == 0.0) return;
   result.warnings.push_back(fmt::format(
-      "optical depths reach {:.2g}, from widths of the table: 'fwhm' is the width that a line would have were it "
+      "optical depths reach {:.2g}, from widths of the table: 'fwhm' is the width that a line would have "
+      "were it "
       "thin. A width measured on an opaque line is broadened and shifts T and N; take that of a thin line",
       largest));
 }

@@ -195,7 +195,9 @@ void add_line_options(std::vector<MeasureOption>& table) {
       [](const Description& d) { return show_windows(d.selection.windows); }));
   table.push_back(common(
       "search", "40 km/s", [](Description& d, const std::string& t) { d.options.search_km_s = width_km_s(t); },
-      [](const Description& d) { return number(d.options.search_km_s, "km/s"); }));
+      [](const Description& d) {
+        return d.options.search_km_s ? number(*d.options.search_km_s, "km/s") : std::string("automatic");
+      }));
   table.push_back(common(
       "line_width", "1.5 km/s",
       [](Description& d, const std::string& t) { d.options.fwhm_km_s = width_km_s(t); },

@@ -60,12 +60,47 @@ std::map<std::size_t, VelocityRange> windows_by_transition(
   return found;
 }
 
-/// Rest frequencies that a spectrum covers, for a source at this velocity, with room for half a window.
+/// Rest frequencies that a spectrum covers, for a source at this velocity.
+QuantityRange covered_by(const Spectrum& spectrum, double vlsr_km_s) {
+  const double factor = 1.0 / (1.0 - vlsr_km_s * 1e3 / constants::kLightMPerS);
+  return {spectrum.axis.low_hz() * factor, spectrum.axis.high_hz() * factor};
+}
+
+/// The same with room for half a window.
 QuantityRange band_of(const Spectrum& spectrum, const MeasurementOptions& options) {
-  const double factor = 1.0 / (1.0 - options.vlsr_km_s * 1e3 / constants::kLightMPerS);
-  const double margin = options.window_km_s.value_or(options.search_km_s) * 1e3 / constants::kLightMPerS;
-  return {spectrum.axis.low_hz() * factor * (1.0 - margin),
-          spectrum.axis.high_hz() * factor * (1.0 + margin)};
+  const QuantityRange covered = covered_by(spectrum, options.vlsr_km_s);
+  const double widest_km_s = options.window_km_s.value_or(options.search_km_s.value_or(kSearchKmS));
+  const double margin = widest_km_s * 1e3 / constants::kLightMPerS;
+  return {covered.low * (1.0 - margin), covered.high * (1.0 + margin)};
+}
+
+std::string in_ghz(const QuantityRange& band) {
+  return fmt::format("{:.6g} to {:.6g} GHz", band.low * 1e-9, band.high * 1e-9);
+}
+
+std::vector<std::string> labels_of(const std::vector<LineRequest>& requests) {
+  std::vector<std::string> labels;
+  for (const LineRequest& request : requests) labels.push_back(request.label);
+  return labels;
+}
+
+/// What least_strength alone leaves out, named; empty: nothing.
+std::string weaker_lines(const Species& species, const std::vector<QuantityRange>& bands,
+                         const LineSelection& selection, const std::vector<LineRequest>& wanted) {
+  if (!selection.only_lines.empty()) return {};
+  LineSelection all = selection;
+  all.least_strength = 0.0;
+  std::vector<std::string> labels = labels_of(requests_for(species, bands, all));
+  const std::vector<std::string> kept = labels_of(wanted);
+  const std::set<std::string> shown(kept.begin(), kept.end());
+  std::erase_if(labels, [&](const std::string& label) { return shown.contains(label); });
+  if (labels.empty()) return {};
+  return fmt::format(
+      "{} weaker line{} of {} in the bands {} left out, below {:g} of the strongest at {:g} K: {}; "
+      "--least-strength or --excitation bring{} {} in",
+      labels.size(), labels.size() == 1 ? "" : "s", species.name, labels.size() == 1 ? "is" : "are",
+      selection.least_strength, selection.excitation_k, listed(labels, 4), labels.size() == 1 ? "s" : "",
+      labels.size() == 1 ? "it" : "them");
 }
 
 std::vector<LineRequest> as_neighbours(std::vector<LineRequest> requests) {
@@ -191,9 +226,15 @@ class SpeciesMeasurer {
  private:
   void find_wanted() {
     std::vector<QuantityRange> bands(spectra_.size);
-    for_each_index(spectra_.size, run_.threads,
-                   [&](std::size_t i) { bands[i] = band_of(spectra_.read(i), question_.options); });
-    wanted_ = requests_for(question_.species, distinct(std::move(bands)), question_.selection);
+    covered_.resize(spectra_.size);
+    for_each_index(spectra_.size, run_.threads, [&](std::size_t i) {
+      const Spectrum spectrum = spectra_.read(i);
+      bands[i] = band_of(spectrum, question_.options);
+      covered_[i] = covered_by(spectrum, question_.options.vlsr_km_s);
+    });
+    bands = distinct(std::move(bands));
+    wanted_ = requests_for(question_.species, bands, question_.selection);
+    weaker_ = weaker_lines(question_.species, bands, question_.selection, wanted_);
   }
 
   static std::vector<QuantityRange> distinct(std::vector<QuantityRange> bands) {
@@ -249,9 +290,8 @@ class SpeciesMeasurer {
   SpeciesMeasurement gather() {
     tell_blends_apart();
     SpeciesMeasurement result;
-    if (wanted_.empty()) {
-      result.warnings.push_back(fmt::format("no line of {} lies in the spectra", question_.species.name));
-    }
+    if (std::string text = without_lines(); !text.empty()) result.warnings.push_back(std::move(text));
+    if (!weaker_.empty()) result.warnings.push_back(weaker_);
     for (Answer& answer : answers_) {
       for (IntensityRow& row : answer.table.rows) {
         row.line_number = result.table.rows.size() + 1;
@@ -264,6 +304,26 @@ class SpeciesMeasurer {
     return result;
   }
 
+  static bool has_line(const Answer& answer) {
+    return std::any_of(answer.measurement.lines.begin(), answer.measurement.lines.end(),
+                       [](const LineMeasurement& line) { return line.status != LineStatus::not_covered; });
+  }
+
+  /// Names the spectra in which no line lies, with what they cover; empty: there are none.
+  [[nodiscard]] std::string without_lines() const {
+    std::vector<std::string> names;
+    for (std::size_t i = 0; i < answers_.size(); ++i) {
+      if (has_line(answers_[i])) continue;
+      names.push_back(fmt::format("{} ({})", answers_[i].measurement.spectrum, in_ghz(covered_[i])));
+    }
+    if (names.empty()) return {};
+    const bool all = names.size() == answers_.size();
+    const bool chosen = !question_.selection.only_lines.empty() || !question_.selection.without_lines.empty();
+    return fmt::format("no {}line of {} lies in {}; rest frequencies covered at V_LSR {:g} km/s: {}",
+                       chosen ? "chosen " : "", question_.species.name, all ? "the spectra" : "some spectra",
+                       question_.options.vlsr_km_s, listed(names, 4));
+  }
+
   static void add_warning(std::string warning, std::vector<std::string>& warnings) {
     if (std::find(warnings.begin(), warnings.end(), warning) == warnings.end())
       warnings.push_back(std::move(warning));
@@ -273,6 +333,8 @@ class SpeciesMeasurer {
   const SpectrumSource& spectra_;
   const MeasurementRun& run_;
   std::vector<LineRequest> wanted_;
+  std::vector<QuantityRange> covered_;  ///< rest frequencies of each spectrum [Hz]
+  std::string weaker_;
   std::vector<Answer> answers_;
   std::mutex mutex_;
   std::size_t done_ = 0;

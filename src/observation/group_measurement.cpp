@@ -132,10 +132,17 @@ class GroupMeasurement {
     for (std::size_t k = 0; k < results.size(); ++k) {
       if (std::count(first.begin(), first.end(), first[k]) == 1) {
         fill(results[k], fit->areas[k], "joint fit of Gaussians");
+        name_the_others(results, k);
         attach(results[k], *fit, k);
       } else if (first[k] == k) {
         fill_blend(results, sum_of(*fit, first, k), "joint fit of Gaussians, sum of the blend", first, k);
       }
+    }
+  }
+
+  static void name_the_others(std::vector<LineMeasurement>& results, std::size_t k) {
+    for (std::size_t i = 0; i < results.size(); ++i) {
+      if (i != k) results[k].fitted_with.push_back(results[i].label);
     }
   }
 

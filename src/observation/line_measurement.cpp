@@ -2,6 +2,7 @@
 
 #include <trotline/base/text.hpp>
 #include <trotline/observation/line_measurement.hpp>
+#include <trotline/physics/constants.hpp>
 
 #include "group_measurement.hpp"
 
@@ -15,7 +16,7 @@ void require(bool good, const std::string& found, const std::string& expected) {
 void check(const std::vector<LineRequest>& requests, const MeasurementOptions& options) {
   require(std::isfinite(options.vlsr_km_s) && std::abs(options.vlsr_km_s) < 2.9e5, "V_LSR makes no sense",
           "a velocity below that of light");
-  for (const auto& width : {options.window_km_s, std::optional(options.search_km_s), options.fwhm_km_s}) {
+  for (const auto& width : {options.window_km_s, options.search_km_s, options.fwhm_km_s}) {
     require(!width || (std::isfinite(*width) && *width > 0.0), "a width is not above 0",
             "a velocity above 0 km/s");
   }
@@ -40,11 +41,28 @@ void check(const std::vector<LineRequest>& requests, const MeasurementOptions& o
 
 VelocityRange about(double centre, double width) { return {centre - 0.5 * width, centre + 0.5 * width}; }
 
+/// What is searched for a window. With what is kept free beside it a window takes 1.5 times its width away
+/// from the baseline: a third of the band leaves half of it. Polynomials that cross two thirds of a band, of
+/// orders that the data choose, follow the line.
+double search_width_km_s(const Spectrum& spectrum, const MeasurementOptions& options) {
+  if (options.search_km_s) return *options.search_km_s;
+  constexpr double kOfTheBand = 1.0 / 3.0;
+  const auto channels = static_cast<double>(std::max<Eigen::Index>(1, spectrum.intensity.size()));
+  const double with_value = static_cast<double>(spectrum.intensity.isFinite().count()) / channels;
+  const double low = spectrum.axis.low_hz();
+  const double high = spectrum.axis.high_hz();
+  const double band_km_s = constants::kLightMPerS * 1e-3 * 2.0 * (high - low) / (high + low) * with_value;
+  return band_km_s > 0.0 ? std::min(kSearchKmS, kOfTheBand * band_km_s) : kSearchKmS;
+}
+
 class Measurer {
  public:
   Measurer(const Spectrum& spectrum, const std::vector<LineRequest>& requests,
            const MeasurementOptions& options)
-      : spectrum_(spectrum), requests_(requests), options_(options) {}
+      : spectrum_(spectrum),
+        requests_(requests),
+        options_(options),
+        search_km_s_(search_width_km_s(spectrum, options)) {}
 
   SpectrumMeasurement run() {
     result_.spectrum = spectrum_.name;
@@ -53,7 +71,7 @@ class Measurer {
     result_.beam_fwhm_rad = spectrum_.beam_fwhm_rad;
     result_.forward_efficiency = spectrum_.forward_efficiency;
     result_.main_beam_efficiency = spectrum_.main_beam_efficiency;
-    result_.window = about(options_.vlsr_km_s, options_.window_km_s.value_or(options_.search_km_s));
+    result_.window = about(options_.vlsr_km_s, options_.window_km_s.value_or(search_km_s_));
     place_all();
     if (!options_.window_km_s) find_window();
     std::vector<std::optional<LineMeasurement>> by_request(requests_.size());
@@ -96,12 +114,13 @@ class Measurer {
   /// 4e-4 of a Gaussian, and five channels at least.
   void find_window() {
     constexpr double kEnough = 5.0;
+    if (wanted_.empty()) return;
     const auto best = fit_best_line(make_context(), grouped(wanted_));
     if (!best || best->signal_to_noise < kEnough) {
-      result_.warnings.push_back(
-          fmt::format("no line stands out: the windows are the {} km/s that were searched, which "
-                      "costs sensitivity",
-                      options_.search_km_s));
+      result_.warnings.push_back(fmt::format(
+          "no line stands out: the windows are the {:.4g} km/s that were searched, which "
+          "costs sensitivity. --search sets another width to look in, --window that of the windows",
+          search_km_s_));
       return;
     }
     result_.window_snr = best->signal_to_noise;
@@ -123,6 +142,7 @@ class Measurer {
   const Spectrum& spectrum_;
   const std::vector<LineRequest>& requests_;
   const MeasurementOptions& options_;
+  double search_km_s_;
   std::vector<PlacedLine> wanted_;
   std::vector<PlacedLine> neighbours_;
   std::vector<bool> excluded_;

@@ -6,6 +6,7 @@ namespace {
 
 std::string note_of(const LineMeasurement& line, const MeasurementOptions& options) {
   std::string note = line.method;
+  if (!line.fitted_with.empty()) note += "; fitted with " + listed(line.fitted_with, 6);
   note += fmt::format("; baseline order {}, rms {:.3g}", line.baseline_order, line.rms);
   if (!line.detected)
     note += fmt::format("; below {:g} sigma, limit {:.3g}", options.limit_in_sigma, line.limit);
@@ -21,6 +22,21 @@ std::string why_not(const LineMeasurement& line) {
     if (line.has(flag)) flags.emplace_back(name_of(flag));
   }
   return listed(flags);
+}
+
+/// A baseline that crosses most of what it was fitted to may hold any number, and may have eaten the line.
+bool is_lost_in_baseline(const LineMeasurement& line) {
+  constexpr double kLost = 5.0;
+  return line.baseline_sigma > kLost * line.noise_sigma;
+}
+
+std::string lost_in_baseline(const LineMeasurement& line) {
+  return fmt::format(
+      "line {} is not measured well: its baseline is fitted to so little beside the window of {:.4g} km/s "
+      "that it "
+      "makes the error {:.0f} times that of the noise; state a narrower --window or --search, or "
+      "--baseline-order",
+      line.label, line.window.high_km_s - line.window.low_km_s, line.sigma() / line.noise_sigma);
 }
 
 IntensityRow row_of(const Spectrum& spectrum, const LineMeasurement& line,
@@ -57,6 +73,9 @@ IntensityTable to_intensity_table(const Spectrum& spectrum, const SpectrumMeasur
       table.warnings.push_back(
           fmt::format("{}: line {} is left out: {}", spectrum.name, line.label, why_not(line)));
       continue;
+    }
+    if (is_lost_in_baseline(line)) {
+      table.warnings.push_back(fmt::format("{}: {}", spectrum.name, lost_in_baseline(line)));
     }
     table.rows.push_back(row_of(spectrum, line, options));
     table.rows.back().line_number = table.rows.size();

@@ -26,7 +26,11 @@ std::string Region::prepare() {
     return fmt::format("{} of {} channels of the window have no value", holes(), window_.size());
   }
   auto fit = fit_baseline(baseline_data(), line_free_, context_.correlation, context_.options.baseline);
-  if (!fit) return fmt::format("{} line-free channels are too few for the baseline", line_free_.size());
+  if (!fit) {
+    return fmt::format(
+        "{} line-free channels are too few for the baseline: --window or --search make the windows narrower",
+        line_free_.size());
+  }
   fit_ = std::move(*fit);
   if (context_.spectrum.noise_sigma) fit_->rms = *context_.spectrum.noise_sigma;
   if (!(fit_->rms > 0.0)) return "the spectrum has no noise, so that no error can be given";

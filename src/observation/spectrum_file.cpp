@@ -96,8 +96,9 @@ void apply_unit(const std::optional<std::string>& unit, const SpectrumOptions& o
                 const std::string& where, Spectrum& spectrum) {
   const auto& text = unit ? unit : options.intensity_unit;
   if (!text) {
-    throw InputError(Place{where}, {"the unit of the intensities (BUNIT) is missing",
-                                    "a unit such as K or Jy/beam", "when you know the unit, --unit states it, as --unit K"});
+    throw InputError(Place{where},
+                     {"the unit of the intensities (BUNIT) is missing", "a unit such as K or Jy/beam",
+                      "when you know the unit, --unit states it, as --unit K"});
   }
   const IntensityUnit found = parse_intensity_unit(*text, where);
   if (found.factor != 1.0) spectrum.intensity *= found.factor;

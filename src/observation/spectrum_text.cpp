@@ -143,7 +143,8 @@ class TextSpectrum {
                      {written ? fmt::format("the frame is '{}'", printable(*written))
                               : "the frame of the axis is not given",
                       "a comment '# frame: LSRK' before the header line, or a column 'v_lsr [km/s]'",
-                      written ? "text does not hold what a correction needs" : ""});
+                      written ? "text does not hold what a correction needs"
+                              : "when you know it, --frame states it, as --frame LSRK"});
   }
 
   [[nodiscard]] double axis_scale() const {

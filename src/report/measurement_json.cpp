@@ -80,6 +80,7 @@ Json json_of(const LineMeasurement& line) {
   json["flags"] = Json::array();
   for (const LineFlag flag : line.flags) json["flags"].push_back(name_of(flag));
   json["neighbours"] = line.neighbours;
+  json["fitted_with"] = line.fitted_with;
   return json;
 }
 

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include <trotline/base/text.hpp>
 #include <trotline/report/display_text.hpp>
 #include <trotline/report/measurement_report.hpp>
 #include <trotline/report/rounding.hpp>
@@ -103,6 +104,7 @@ class MeasurementPage {
       remarks.push_back("not detected, < " + significant(line.limit, 2, glyphs()));
     }
     if (!line.blend.empty()) remarks.push_back("blend " + display_text(line.blend));
+    if (!line.fitted_with.empty()) remarks.push_back("fitted with " + display_text(listed(line.fitted_with, 3)));
     for (const LineFlag flag : line.flags) remarks.emplace_back(name_of(flag));
     if (!line.is_trusted()) remarks.emplace_back("left out");
     return fmt::format("{}", fmt::join(remarks, ", "));

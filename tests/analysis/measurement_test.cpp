@@ -59,6 +59,21 @@ TEST(MeasureSpecies, GivesTheTableOfEveryCoveredLine) {
   EXPECT_NEAR(measured.table.rows[1].intensity, 20.0, 5.0 * measured.table.rows[1].intensity_sigma);
 }
 
+TEST(MeasureSpecies, CountsTheLinesThatStrengthLeavesOut) {
+  std::mt19937_64 random(4);
+  const Spectrum spectrum = simulation::spectrum({}, random);
+  MeasurementOptions options;
+  options.window_km_s = 3.5;
+  const auto left_out = testing::AllOf(testing::HasSubstr("1 weaker line of XY"), testing::HasSubstr("9-2"),
+                                       testing::HasSubstr("--least-strength or --excitation"));
+  LineSelection selection;
+  EXPECT_THAT(measure_species({spectrum}, invented(), selection, options).warnings,
+              testing::Contains(left_out));
+  selection.least_strength = 0.0;
+  EXPECT_THAT(measure_species({spectrum}, invented(), selection, options).warnings,
+              testing::Not(testing::Contains(testing::HasSubstr("weaker"))));
+}
+
 TEST(MeasureSpecies, MarksOtherSpeciesAndTheImageSideband) {
   std::mt19937_64 random(2);
   simulation::Setup setup;
@@ -87,7 +102,10 @@ TEST(MeasureSpecies, SaysWhenNothingIsCovered) {
   options.window_km_s = 5.0;
   const auto measured = measure_species({simulation::spectrum({}, random)}, species, {}, options);
   EXPECT_TRUE(measured.table.rows.empty());
-  EXPECT_THAT(measured.warnings, testing::Contains(testing::HasSubstr("no line of XY lies in the spectra")));
+  EXPECT_THAT(measured.warnings,
+              testing::Contains(
+                  testing::AllOf(testing::HasSubstr("no line of XY lies in the spectra"),
+                                 testing::HasSubstr("99.9829 to 100.017 GHz"))));  // 102.4 km/s about 100 GHz
 }
 
 }  // namespace

@@ -245,6 +245,7 @@ TEST(GaussianLines, TwoBlendedLinesOneWidthApartAreRecoveredWithoutBias) {
     if (!a.blend.empty()) continue;
     ++fitted;
     EXPECT_EQ(a.method, "joint fit of Gaussians");
+    EXPECT_THAT(a.fitted_with, testing::ElementsAre("b"));
     first.push_back((a.intensity - 30.0) / a.sigma());
     second.push_back((b.intensity - 20.0) / b.sigma());
   }
@@ -365,6 +366,49 @@ TEST(LineMeasurement, TheWindowIsFoundFromTheStrongestLine) {
       measure_lines(simulation::spectrum(simulation::Setup{}, random), {{"line", kRestHz}}, options);
   ASSERT_EQ(nothing.warnings.size(), 1U);
   EXPECT_THAT(nothing.warnings[0], testing::HasSubstr("no line stands out"));
+}
+
+TEST(LineMeasurement, ABlindingLineIsFoundWhateverTheWidthOfTheBand) {
+  // 50 sigma a channel, 2.5 km/s wide; the search of 40 km/s for wide bands leaves no baseline in 60 km/s.
+  for (const int channels : {300, 450, 600, 700, 800, 900, 950, 1200}) {
+    std::mt19937_64 random(40);
+    simulation::Setup setup;
+    setup.channels = channels;
+    setup.baseline_size = 0.0;
+    setup.lines = {{0.0, 133.0, 2.5}};
+    const Spectrum spectrum = simulation::spectrum(setup, random);
+    const auto measured = measure_lines(spectrum, {{"line", kRestHz}}, {});
+    ASSERT_EQ(measured.lines[0].status, LineStatus::measured) << channels << measured.lines[0].trouble;
+    EXPECT_TRUE(measured.lines[0].detected) << channels;
+    EXPECT_NEAR(measured.lines[0].intensity, 133.0, 4.0 * measured.lines[0].sigma()) << channels;
+    EXPECT_LT(measured.lines[0].sigma(), 3.0) << channels;
+    EXPECT_THAT(to_intensity_table(spectrum, measured, {}).warnings, testing::IsEmpty()) << channels;
+  }
+}
+
+TEST(LineMeasurement, AWindowThatLeavesTooLittleBaselineIsNamedWithTheOptionsThatMendIt) {
+  std::mt19937_64 random(41);
+  simulation::Setup setup;
+  setup.baseline_size = 0.0;
+  setup.lines = {{0.0, 133.0, 2.5}};
+  MeasurementOptions options;
+  options.search_km_s = 40.0;
+  for (const int channels : {600, 700, 800}) {
+    setup.channels = channels;
+    const Spectrum spectrum = simulation::spectrum(setup, random);
+    const IntensityTable table =
+        to_intensity_table(spectrum, measure_lines(spectrum, {{"line", kRestHz}}, options), options);
+    const auto names_options = testing::AllOf(testing::HasSubstr("line line is"), testing::HasSubstr("baseline"),
+                                              testing::HasSubstr("--search"), testing::HasSubstr("--window"));
+    EXPECT_THAT(table.warnings, testing::Contains(names_options)) << channels;
+  }
+}
+
+TEST(LineMeasurement, NoLineOfABandIsNoWeakLine) {
+  std::mt19937_64 random(42);
+  const auto measured = measure_lines(simulation::spectrum({}, random), {{"line", 3.0 * kRestHz}}, {});
+  EXPECT_EQ(measured.lines.at(0).status, LineStatus::not_covered);
+  EXPECT_THAT(measured.warnings, testing::IsEmpty());
 }
 
 Spectrum strong_line(std::uint64_t seed) {

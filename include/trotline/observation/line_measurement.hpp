@@ -26,11 +26,15 @@ struct LineRequest {
   std::optional<VelocityRange> window = {};  ///< in place of the common one
 };
 
+/// Full width of what is searched for a window where nothing is stated and the band is wide enough [km/s].
+inline constexpr double kSearchKmS = 40.0;
+
 struct MeasurementOptions {
   double vlsr_km_s = 0.0;
   std::optional<double> window_km_s;  ///< full width of the windows about V_LSR; nothing: found from the data
-  double search_km_s = 40.0;          ///< full width of what is searched for a window
-  std::optional<double> fwhm_km_s;    ///< expected line width: start of fits
+  /// Full width of what is searched for a window; nothing: kSearchKmS, at most a third of the covered band
+  std::optional<double> search_km_s;
+  std::optional<double> fwhm_km_s;  ///< expected line width: start of fits
   BaselineOptions baseline;
   double calibration_error = 0.0;  ///< fraction of the intensity
   double limit_in_sigma =
@@ -112,7 +116,8 @@ struct LineMeasurement {
   int baseline_order = 0;
   std::size_t baseline_channels = 0;
   std::optional<GaussianLine> gaussian;
-  std::string blend;  ///< lines with the same mark are one measurement; empty: none
+  std::string blend;                     ///< lines with the same mark are one measurement; empty: none
+  std::vector<std::string> fitted_with;  ///< the other lines of a joint fit
   std::vector<LineFlag> flags;
   std::vector<std::string> neighbours;  ///< what lies in the window, with velocities
   std::optional<LinePanel> panel;
