@@ -84,11 +84,19 @@ double peak_around(const Prediction& prediction, const PredictedLine& line) {
   return peak;
 }
 
+/// Names of neighbours are moved to the right until they stand side by side.
 std::string labels_data(const Prediction& prediction) {
+  constexpr double kBeside = 0.024;  // of the axis: the height of a letter
+  auto lines = named_lines(prediction);
+  std::sort(lines.begin(), lines.end(),
+            [](const PredictedLine* a, const PredictedLine* b) { return a->frequency_mhz < b->frequency_mhz; });
+  const double step_ghz =
+      kBeside * (prediction.lines.back().frequency_mhz - prediction.lines.front().frequency_mhz) / 1e3;
   std::vector<FigureText> texts;
-  for (const PredictedLine* line : named_lines(prediction)) {
-    texts.push_back(
-        {typeset_transition(line->transition), line->frequency_mhz / 1e3, peak_around(prediction, *line)});
+  for (const PredictedLine* line : lines) {
+    double x_ghz = line->frequency_mhz / 1e3;
+    if (!texts.empty()) x_ghz = std::max(x_ghz, texts.back().x + step_ghz);
+    texts.push_back({typeset_transition(line->transition), x_ghz, peak_around(prediction, *line)});
   }
   return figure_texts(texts, kLabelColumns);
 }

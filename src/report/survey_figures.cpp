@@ -216,7 +216,8 @@ const char* caption_of(SurveyFigure figure) {
     case SurveyFigure::temperature_column:
       return "Temperature against column density, with standard errors.";
     case SurveyFigure::temperature_histogram:
-      return "How many jobs have which temperature; stated temperatures are left out.";
+      return "How many jobs of all species have which temperature; the last bar holds all hotter ones too. Stated "
+             "temperatures are left out.";
     case SurveyFigure::species_pairs:
       return "Column densities of two species in the same source; the dashed line marks equal ones.";
     case SurveyFigure::line_residuals:

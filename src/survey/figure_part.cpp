@@ -77,19 +77,26 @@ class DataFile {
   std::size_t rows_ = 0;
 };
 
-/// Edges of bins for a histogram, after Freedman & Diaconis 1981 (Z. Wahrscheinlichkeitstheorie 57, 453), at
-/// most 60, over the inner 99 % of the values.
+/// The next of 1, 2, 5, 10, 20 ... that is no less.
+double round_step(double least) {
+  const double decade = std::pow(10.0, std::floor(std::log10(least)));
+  for (const double factor : {1.0, 2.0, 5.0}) {
+    if (factor * decade >= least) return factor * decade;
+  }
+  return 10.0 * decade;
+}
+
+/// Round edges of bins for a histogram, about as wide as Freedman & Diaconis 1981 (Z. Wahrscheinlichkeitstheorie
+/// 57, 453) want them, at most 60. Up to 0.5 % of the values may lie above the last edge: they belong to the last bin.
 std::vector<double> bin_edges(const std::vector<double>& sorted) {
-  const auto at = [&](double share) {
-    return sorted[static_cast<std::size_t>(share * static_cast<double>(sorted.size() - 1))];
-  };
-  const double low = std::floor(at(0.0));
-  const double high = std::max(at(0.995), low + 1.0);
+  const auto last = static_cast<double>(sorted.size() - 1);
+  const auto at = [&](double share) { return sorted[static_cast<std::size_t>(std::ceil(share * last))]; };
+  const double low = sorted.front();
+  const double span = std::max(at(0.995) - low, 1.0);
   const double width = 2.0 * (at(0.75) - at(0.25)) / std::cbrt(static_cast<double>(sorted.size()));
-  const auto wanted = width > 0.0 ? (high - low) / width : 10.0;
-  const int bins = static_cast<int>(std::clamp(std::ceil(wanted), 4.0, 60.0));
-  std::vector<double> edges;
-  for (int i = 0; i <= bins; ++i) edges.push_back(low + (high - low) * i / bins);
+  const double step = round_step(std::clamp(width, span / 60.0, span / 4.0));
+  std::vector<double> edges = {step * std::floor(low / step)};
+  while (edges.back() <= low + span) edges.push_back(edges.front() + step * static_cast<double>(edges.size()));
   return edges;
 }
 
@@ -169,12 +176,11 @@ class FigurePart::Data {
     std::sort(sorted.begin(), sorted.end());
     const std::vector<double> edges = bin_edges(sorted);
     DataFile file(output_.staging(), "temperature-histogram",
-                  "# from [K]\tto [K]\tjobs (those above the last bin are left out)");
+                  "# from [K]\tto [K]\tjobs (the last bin holds all above it too)");
     for (std::size_t i = 0; i + 1 < edges.size(); ++i) {
       const bool last = i + 2 == edges.size();
       const auto begin = std::lower_bound(sorted.begin(), sorted.end(), edges[i]);
-      const auto end = last ? std::upper_bound(sorted.begin(), sorted.end(), edges[i + 1])
-                            : std::lower_bound(sorted.begin(), sorted.end(), edges[i + 1]);
+      const auto end = last ? sorted.end() : std::lower_bound(sorted.begin(), sorted.end(), edges[i + 1]);
       file.row(fmt::format("{:.6g}\t{:.6g}\t{}", edges[i], edges[i + 1], end - begin));
     }
     draw(SurveyFigure::temperature_histogram, file.close(), {});
