@@ -3,11 +3,16 @@
 #include <trotline/base/text.hpp>
 
 namespace trotline {
+namespace {
+
+constexpr std::size_t kMostTableBytes = std::size_t{256} << 20;  // as much as a reader of tables takes
+
+}  // namespace
 
 Result analyse(const RunDescription& run, const SpeciesLibrary& library) {
   if (run.measure) return analyse(run, library, measure(*run.measure, library));
   const Species species = library.find(run.species);
-  const std::string bytes = read_file(run.table);
+  const std::string bytes = read_file(run.table, kMostTableBytes);
   const std::string name = run.table == "-" ? "standard input" : run.table;
   Result result = analyse(species, parse_intensity_table(bytes, name), run.options);
   result.provenance.table_fingerprint = fingerprint(bytes);

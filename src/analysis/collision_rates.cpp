@@ -160,7 +160,15 @@ CollisionRates parse_collision_rates(const std::string& text, const std::string&
   collisions.temperature_k = temperatures(root, name);
   const double scale = rate_scale(root, name);
   for (const auto& entry : list(root, "rates", name)) {
-    collisions.rates.push_back(rate_of(entry, species, collisions.temperature_k.size(), scale, name));
+    const CollisionRates::Rate rate = rate_of(entry, species, collisions.temperature_k.size(), scale, name);
+    const bool twice =
+        std::any_of(collisions.rates.begin(), collisions.rates.end(), [&](const CollisionRates::Rate& other) {
+          return other.upper == rate.upper && other.lower == rate.lower;
+        });
+    if (twice)
+      throw InputError(place_of(name, entry),
+                       {"the rates of this pair of levels stand here again", "each pair once"});
+    collisions.rates.push_back(rate);
   }
   return collisions;
 }

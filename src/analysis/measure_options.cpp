@@ -77,8 +77,12 @@ std::vector<std::pair<std::string, VelocityRange>> line_windows(const std::strin
                         "a label, ':' and a range, as in '1-0: -3..8 km/s'"});
     }
     const QuantityRange range = parse_quantity_range(part.substr(colon + 1), Dimension::velocity);
-    windows.push_back({std::string(trimmed(part.substr(0, colon))),
-                       {range.low / kMetresPerKm, range.high / kMetresPerKm}});
+    const std::string_view label = trimmed(std::string_view(part).substr(0, colon));
+    for (const auto& [other, window] : windows) {
+      if (other == label)
+        throw InputError({fmt::format("'{}' has two windows", printable(label)), "one window a line"});
+    }
+    windows.push_back({std::string(label), {range.low / kMetresPerKm, range.high / kMetresPerKm}});
   }
   if (windows.empty()) throw InputError({"no window is given", "windows such as '1-0: -3..8 km/s'"});
   return windows;
@@ -213,12 +217,10 @@ void add_line_options(std::vector<MeasureOption>& table) {
       [](Description& d, const std::string& t) { d.selection.least_strength = fraction(t); },
       [](const Description& d) { return number(d.selection.least_strength, ""); }));
   table.push_back(common(
-      "only", "1-0, 2-1",
-      [](Description& d, const std::string& t) { d.selection.only_lines = names_of(t); },
+      "only", "1-0, 2-1", [](Description& d, const std::string& t) { d.selection.only_lines = names_of(t); },
       [](const Description& d) { return joined(d.selection.only_lines); }));
   table.push_back(common(
-      "without", "3-2",
-      [](Description& d, const std::string& t) { d.selection.without_lines = names_of(t); },
+      "without", "3-2", [](Description& d, const std::string& t) { d.selection.without_lines = names_of(t); },
       [](const Description& d) { return joined(d.selection.without_lines); }));
 }
 
@@ -236,8 +238,7 @@ void add_measurement_options(std::vector<MeasureOption>& table) {
       },
       [](const Description& d) { return number(d.options.limit_in_sigma, ""); }));
   table.push_back(common(
-      "neighbours", "13CO, HCN",
-      [](Description& d, const std::string& t) { d.other_species = names_of(t); },
+      "neighbours", "13CO, HCN", [](Description& d, const std::string& t) { d.other_species = names_of(t); },
       [](const Description& d) { return joined(d.other_species); }));
   table.push_back(common(
       "local_oscillator", "105 GHz",
@@ -247,7 +248,8 @@ void add_measurement_options(std::vector<MeasureOption>& table) {
 
 void add_file_options(std::vector<MeasureOption>& table) {
   table.push_back(of_files(
-      "beam", "27 arcsec", [](Input& i, const std::string& t) { i.beam_fwhm_rad = positive(t, Dimension::angle); },
+      "beam", "27 arcsec",
+      [](Input& i, const std::string& t) { i.beam_fwhm_rad = positive(t, Dimension::angle); },
       [](const Input& i) { return if_given(i.beam_fwhm_rad, kRadPerArcsec, "arcsec"); }));
   table.push_back(of_files(
       "forward_efficiency", "0.95",
@@ -271,8 +273,7 @@ void add_file_options(std::vector<MeasureOption>& table) {
         return std::string(*i.reading.scale == IntensityScale::antenna ? "TA*" : "Tmb");
       }));
   table.push_back(of_files(
-      "unit", "K",
-      [](Input& i, const std::string& t) { i.reading.intensity_unit = std::string(trimmed(t)); },
+      "unit", "K", [](Input& i, const std::string& t) { i.reading.intensity_unit = std::string(trimmed(t)); },
       [](const Input& i) { return i.reading.intensity_unit.value_or(kNotGiven); }));
   table.push_back(of_files(
       "frame", "LSRK", [](Input& i, const std::string& t) { i.reading.axis.frame = frame_of(t); },

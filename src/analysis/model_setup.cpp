@@ -66,10 +66,27 @@ void require_one_measurement(const std::vector<PreparedLine>& lines, const std::
   for (const std::size_t row : rows) {
     const LineResult& other = lines[row].result;
     constexpr double kSame = 1e-6;
-    const bool same = std::abs(other.intensity_k_km_s - first.intensity_k_km_s) <=
-                          kSame * std::abs(first.intensity_k_km_s) &&
-                      other.limit == first.limit;
-    if (same) continue;
+    const auto alike = [](double a, double b) {
+      return (std::isnan(a) && std::isnan(b)) || std::abs(a - b) <= kSame * std::abs(a);
+    };
+    if (row != rows.front() && other.transition == first.transition) {
+      throw InputError(
+          {fmt::format("{} stands twice in blend '{}', in table lines {} and {}", other.transition,
+                       printable(first.blend), first.table_line, other.table_line),
+           "each transition of a blend once"});
+    }
+    const bool alike_in_error = alike(first.intensity_error_k_km_s, other.intensity_error_k_km_s) &&
+                                alike(first.calibration_error, other.calibration_error) &&
+                                first.calibration_group == other.calibration_group &&
+                                first.limit == other.limit;
+    if (!alike_in_error) {
+      throw InputError(
+          {fmt::format(
+               "the rows of blend '{}' in table lines {} and {} differ in error, calibration or limit",
+               printable(first.blend), first.table_line, other.table_line),
+           "one measurement: the same error, calibration and limit in each row of a blend"});
+    }
+    if (alike(first.intensity_k_km_s, other.intensity_k_km_s)) continue;
     throw InputError(
         {fmt::format("the rows of blend '{}' differ: {:g} K km/s in table line {}, {:g} K km/s in {}",
                      printable(first.blend), first.intensity_k_km_s, first.table_line, other.intensity_k_km_s,

@@ -75,8 +75,8 @@ class TemporaryFile {
   }
 
  private:
-  /// It can only be read by setting it, and it is the process's: one thread at a time, or two could put back what
-  /// the other has set.
+  /// It can only be read by setting it, and it is the process's: one thread at a time, or two could put back
+  /// what the other has set.
   static mode_t current_umask() {
     static std::mutex one_at_a_time;
     const std::scoped_lock lock(one_at_a_time);
@@ -142,9 +142,23 @@ std::string read_file(const std::string& path, std::size_t most_bytes) {
   }
   if (!fs::exists(status)) throw InputError(Place{path}, {"there is no such file", "a readable file"});
   if (fs::is_directory(status)) throw InputError(Place{path}, {"is a folder", "a file"});
+  if (fs::is_character_file(status) || fs::is_block_file(status)) {
+    throw InputError(Place{path}, {"is a device, which has no end", "a file"});
+  }
   std::ifstream stream(path, std::ios::binary);
   if (!stream) throw InputError(Place{path}, {"cannot be opened for reading", "a readable file"});
   return read_stream(stream, path, most_bytes);
+}
+
+void require_no_input_among(const std::vector<fs::path>& outputs, const std::vector<std::string>& inputs) {
+  std::error_code error;
+  for (const fs::path& output : outputs) {
+    for (const std::string& input : inputs) {
+      if (input.empty() || !fs::equivalent(output, input, error) || error) continue;
+      throw InputError(Place{input}, {"is an input, and would be written over by an output of the same name",
+                                      "another name or folder for the output"});
+    }
+  }
 }
 
 void write_file(const fs::path& path, std::string_view bytes) {

@@ -67,6 +67,19 @@ OutputOptions output_options(const ParsedCommand& command) {
   return options;
 }
 
+/// No file that the run reads may be one that it writes.
+void keep_inputs(const RunDescription& run, const ParsedCommand& command) {
+  const std::filesystem::path folder = command.value("out");
+  if (folder.empty()) return;
+  std::vector<std::filesystem::path> outputs = {folder / "measured.ecsv"};
+  for (const std::string& name : output_family()) outputs.push_back(folder / name);
+  std::vector<std::string> inputs = {command.positional, run.table, run.species, run.options.collisions};
+  if (run.measure) {
+    for (const SpectrumInput& spectrum : run.measure->inputs) inputs.push_back(spectrum.path);
+  }
+  require_no_input_among(outputs, inputs);
+}
+
 /// A result, and the lines that were measured for it where the description says so.
 struct Fitted {
   Result result;
@@ -102,6 +115,7 @@ ExitCode run_fit(const std::vector<std::string>& arguments, const Console& conso
   if (console.owns_process) clean_up_when_stopped();
   const OutputOptions outputs = output_options(command);
   const RunDescription run = description_of(command);
+  keep_inputs(run, command);
   const Fitted fitted = fit(run);
   const Result& result = fitted.result;
   if (!command.value("out").empty()) write_folder(fitted, command.value("out"), outputs, console);

@@ -28,7 +28,9 @@ std::string with(char to, std::string text, char from) {
 }
 
 CommandSyntax syntax() {
-  CommandSyntax syntax{"measure", "SPECTRUM", true, {"species", "out", "jobs", "panels", "figures", "model"}, {"json", "help"}, true};
+  CommandSyntax syntax{
+      "measure",        "SPECTRUM", true, {"species", "out", "jobs", "panels", "figures", "model"},
+      {"json", "help"}, true};
   for (const MeasureOption& option : measure_option_table())
     syntax.values.push_back(with('-', option.key, '_'));
   return syntax;
@@ -166,6 +168,14 @@ void check_name(const std::string& path) {
   }
 }
 
+/// The table may not take the place of a spectrum or a species file.
+void keep_inputs(const MeasureDescription& description, const ParsedCommand& command) {
+  if (command.value("out").empty()) return;
+  std::vector<std::string> inputs = {description.species, command.value("model")};
+  for (const SpectrumInput& input : description.inputs) inputs.push_back(input.path);
+  require_no_input_among({command.value("out")}, inputs);
+}
+
 void write_table(const IntensityTable& table, const std::string& path, const Console& console) {
   write_file(path, path.ends_with(".fits") ? to_fits(table) : to_ecsv(table));
   console.err << fmt::format("trotline: wrote {} to {}\n",
@@ -178,8 +188,7 @@ SpeciesMeasurement measured(const MeasureDescription& description, int threads, 
   MeasurementRun run;
   run.threads = threads;
   run.progress = [&](std::size_t done, std::size_t of) { progress.show(done, of); };
-  SpeciesMeasurement result =
-      measure(description, SpeciesLibrary(SpeciesLibrary::standard_folders()), run);
+  SpeciesMeasurement result = measure(description, SpeciesLibrary(SpeciesLibrary::standard_folders()), run);
   progress.end();
   return result;
 }
@@ -191,6 +200,7 @@ ExitCode run_measure(const std::vector<std::string>& arguments, const Console& c
   if (console.owns_process) clean_up_when_stopped();
   const MeasureDescription description = description_of(command);
   check_name(command.value("out"));
+  keep_inputs(description, command);
   const Drawing drawing(command);
   SpeciesMeasurement result = measured(description, threads_of(command), console);
   const bool any = !result.table.rows.empty();

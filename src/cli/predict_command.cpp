@@ -23,7 +23,8 @@ std::string dashed(std::string key) {
 
 CommandSyntax syntax() {
   CommandSyntax syntax{"predict", "SPECIES", true, {"out"}, {"no-figure", "json", "help"}};
-  for (const PredictionOption& option : prediction_option_table()) syntax.values.push_back(dashed(option.key));
+  for (const PredictionOption& option : prediction_option_table())
+    syntax.values.push_back(dashed(option.key));
   return syntax;
 }
 
@@ -65,6 +66,9 @@ ExitCode run_predict(const std::vector<std::string>& arguments, const Console& c
   if (console.owns_process) clean_up_when_stopped();
   const PredictionOptions options = options_of(command);
   const Species species = SpeciesLibrary(SpeciesLibrary::standard_folders()).find(command.positional);
+  const std::filesystem::path folder = command.value("out");
+  if (!folder.empty())
+    require_no_input_among({folder / "prediction.json", folder / "prediction.ecsv"}, {command.positional});
   const Prediction prediction = predict(species, options);
   if (!command.value("out").empty()) {
     write_folder(prediction, command.value("out"), !command.flags.at("no-figure"), console);
@@ -72,8 +76,8 @@ ExitCode run_predict(const std::vector<std::string>& arguments, const Console& c
   if (command.flags.at("json")) {
     console.out << prediction_json(prediction);
   } else {
-    console.out << prediction_text(prediction,
-                                   {static_cast<std::size_t>(console.width), console.colour, console.unicode});
+    console.out << prediction_text(
+        prediction, {static_cast<std::size_t>(console.width), console.colour, console.unicode});
   }
   return prediction.lines.empty() ? ExitCode::no_answer : ExitCode::done;
 }

@@ -21,8 +21,10 @@ struct Verb {
 };
 
 const std::vector<Verb>& verbs() {
-  static const std::vector<Verb> kVerbs = {{"fit", run_fit},         {"measure", run_measure},
-                                           {"survey", run_survey_command}, {"predict", run_predict},
+  static const std::vector<Verb> kVerbs = {{"fit", run_fit},
+                                           {"measure", run_measure},
+                                           {"survey", run_survey_command},
+                                           {"predict", run_predict},
                                            {"species", run_species}};
   return kVerbs;
 }

@@ -1,3 +1,5 @@
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cstdint>
 
@@ -130,6 +132,20 @@ std::vector<std::string> wrapped(std::string_view text, std::size_t width) {
     columns += more;
   }
   return lines;
+}
+
+std::string quiet_json(const std::string& json) {
+  if (std::all_of(json.begin(), json.end(), [](char c) { return static_cast<unsigned char>(c) < 0x80; }))
+    return json;
+  std::string quiet;
+  quiet.reserve(json.size());
+  for (const std::string_view character : characters_of(json)) {
+    const char32_t point = character.size() > 1 ? code_point_of(character) : U' ';
+    const bool steers = (point >= 0x80 && point <= 0x9F) || (point >= 0x202A && point <= 0x202E) ||
+                        (point >= 0x2066 && point <= 0x2069);
+    quiet += steers ? fmt::format("\\u{:04x}", static_cast<unsigned>(point)) : std::string(character);
+  }
+  return quiet;
 }
 
 }  // namespace trotline

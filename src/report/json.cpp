@@ -1,3 +1,4 @@
+#include <trotline/report/display_text.hpp>
 #include <trotline/report/json.hpp>
 
 #include "json_document.hpp"
@@ -214,7 +215,7 @@ Json result_document(const Result& result) {
 }
 
 std::string result_json(const Result& result) {
-  return result_document(result).dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+  return quiet_json(result_document(result).dump(2, ' ', false, Json::error_handler_t::replace)) + "\n";
 }
 
 }  // namespace trotline

@@ -1,5 +1,6 @@
 #include <nlohmann/json.hpp>
 
+#include <trotline/report/display_text.hpp>
 #include <trotline/report/measurement_report.hpp>
 
 namespace trotline {
@@ -110,7 +111,7 @@ std::string measurement_json(const SpeciesMeasurement& measurement) {
   json["warnings"] = measurement.warnings;
   json["provenance"] = Json::object();
   for (const auto& [name, value] : measurement.table.provenance) json["provenance"][name] = value;
-  return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+  return quiet_json(json.dump(2, ' ', false, Json::error_handler_t::replace)) + "\n";
 }
 
 }  // namespace trotline

@@ -230,7 +230,7 @@ std::string prediction_json(const Prediction& prediction) {
                            {"species_file", prediction.species_file},
                            {"data_sources", prediction.data_sources},
                            {"options", options}}}};
-  return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+  return quiet_json(document.dump(2, ' ', false, Json::error_handler_t::replace)) + "\n";
 }
 
 void write_prediction_ecsv(const Prediction& prediction, const std::filesystem::path& path) {

@@ -221,7 +221,7 @@ std::string species_json(const Species& species, const SpeciesQuery& query) {
   if (query.levels || everything) document["levels"] = levels_json(species);
   if (query.lines || everything) document["lines"] = lines_json(species, query);
   if (!query.partition_temperatures_k.empty()) document["partition"] = partition_json(species, query);
-  return document.dump(2) + "\n";
+  return quiet_json(document.dump(2)) + "\n";
 }
 
 }  // namespace trotline

@@ -112,7 +112,7 @@ std::string check_json(const Species& species, const std::vector<SpeciesCheck>& 
                          {"file", species.file},
                          {"outcome", name_of(worst_of(checks))},
                          {"checks", list}};
-  return document.dump(2) + "\n";
+  return quiet_json(document.dump(2)) + "\n";
 }
 
 std::string comparison_text(const Species& first, const Species& second) {
@@ -154,7 +154,7 @@ std::string comparison_json(const Species& first, const Species& second) {
                          {"largest_energy_difference_k", found.largest_energy_step_k},
                          {"einstein_a_factor", number_or_null(found.a_factor)},
                          {"einstein_a_spread", found.a_spread}};
-  return document.dump(2) + "\n";
+  return quiet_json(document.dump(2)) + "\n";
 }
 
 }  // namespace trotline

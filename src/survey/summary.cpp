@@ -3,6 +3,7 @@
 
 #include <cmath>
 
+#include <trotline/report/display_text.hpp>
 #include <trotline/base/text.hpp>
 #include <trotline/survey/summary.hpp>
 
@@ -15,7 +16,7 @@ constexpr std::size_t kReasonsShown = 8;
 constexpr std::size_t kFailuresShown = 8;
 
 std::string dumped(const Json& json) {
-  return json.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+  return quiet_json(json.dump(2, ' ', false, Json::error_handler_t::replace)) + "\n";
 }
 
 std::string times(std::int64_t count, const char* one, const char* many) {

@@ -8,8 +8,14 @@
 namespace trotline {
 
 /// The whole of a file, or of standard input when `path` is "-".
-/// @throws InputError naming the path when it cannot be read, is a folder, or is larger than `most_bytes`
+/// @throws InputError naming the path when it cannot be read, is a folder or a device, or is larger than `most_bytes`
 [[nodiscard]] std::string read_file(const std::string& path, std::size_t most_bytes = std::size_t{1} << 32);
+
+/// Refuses to let an output replace an input: whether any of `outputs` is the same file as any of `inputs`, by
+/// whatever path. Files that do not exist are passed over.
+/// @throws InputError naming the input
+void require_no_input_among(const std::vector<std::filesystem::path>& outputs,
+                            const std::vector<std::string>& inputs);
 
 /// Writes a file whole or not at all: a temporary file beside it, flushed to disk, then renamed.
 /// Folders that are missing on the way are made.

@@ -34,4 +34,8 @@ namespace trotline {
 /// The code point of one character from characters_of(); U+FFFD for a byte that is no UTF-8.
 [[nodiscard]] char32_t code_point_of(std::string_view character);
 
+/// JSON with the characters that steer a terminal (U+0080-9F) or reorder text (U+202A-E, U+2066-9) as escapes;
+/// it reads back as the same document.
+[[nodiscard]] std::string quiet_json(const std::string& json);
+
 }  // namespace trotline
