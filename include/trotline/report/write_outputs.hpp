@@ -17,7 +17,8 @@ struct OutputOptions {
 };
 
 /// Makes all outputs of a result in the staging of `folder`: result.json, lines.ecsv, report.txt and, unless
-/// `formats` is empty, the diagram with its script and data. They appear when the caller commits the folder,
+/// `formats` is empty, the diagram with its script and data; where the result holds draws of a posterior also
+/// samples.ecsv and the corner figure of the draws. They appear when the caller commits the folder,
 /// so a failure here leaves nothing behind. docs/outputs.md describes them.
 /// @throws SystemError when a file cannot be written or the figure not drawn
 void write_outputs(const Result& result, OutputFolder& folder, const OutputOptions& options = {});
