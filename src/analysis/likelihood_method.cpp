@@ -6,6 +6,8 @@
 #include <cmath>
 #include <numbers>
 
+#include <trotline/base/errors.hpp>
+
 #include "diagram_results.hpp"
 #include "model_answer.hpp"
 
@@ -217,7 +219,14 @@ void add_posterior(Result& result, FittedModel& fitted, const RunOptions& option
   PosteriorOptions asked;
   asked.ensemble.seed = options.seed;
   asked.with_draws = options.keep_samples || layout.components > 1 || layout.isomers > 1;
-  fitted.posterior = posterior(*fitted.likelihood, fitted.fit, asked);
+  try {
+    fitted.posterior = posterior(*fitted.likelihood, fitted.fit, asked);
+  } catch (const DomainError&) {
+    // The best fit lies where no walker can start, at bounds of several parameters: an answer, not a fault.
+    result.posterior.refusal = "the best fit lies at the bounds of its parameters, where no draw can start";
+    result.warnings.push_back("the posterior gives no ranges: " + result.posterior.refusal);
+    return;
+  }
   PosteriorSummary& summary = result.posterior;
   summary.method = fitted.posterior->by_quadrature ? "quadrature" : "ensemble sampler";
   summary.refusal = refusal_of(fitted.posterior->status);

@@ -65,6 +65,10 @@ void EnsembleWalk::start(const EnsembleTarget& target) {
       Eigen::VectorXd off(parameters_);
       for (double& x : off) x = normal();
       point = peak + width * (cloud * off);
+      for (Eigen::Index i = 0; i < parameters_; ++i) {  // a peak at a bound: what falls outside is folded back
+        if (point(i, 0) < lower_[i]) point(i, 0) = 2.0 * lower_[i] - point(i, 0);
+        if (point(i, 0) > upper_[i]) point(i, 0) = 2.0 * upper_[i] - point(i, 0);
+      }
       if (!((point.array() > lower_.array()).all() && (point.array() < upper_.array()).all())) continue;
       evaluate_(point, cost);
       ++evaluations_;
