@@ -6,10 +6,9 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/report/display_text.hpp>
+#include <trotline/report/figure.hpp>
 #include <trotline/report/prediction_report.hpp>
-#include <trotline/report/process.hpp>
 #include <trotline/report/survey_figures.hpp>
-#include <trotline/report/text_measure.hpp>
 #include <trotline/report/typeset.hpp>
 
 namespace trotline {
@@ -18,24 +17,19 @@ namespace {
 constexpr std::size_t kMostLabels = 10;
 constexpr std::size_t kLabelColumns = 24;
 
-// Colours as in the other figures: lightness tells apart what hue does.
-const char* const kOpening = R"(set encoding utf8
+constexpr double kWidthMm = 164.0;
+constexpr double kHeightOfOneMm = 77.0;
+constexpr double kHeightOfTwoMm = 138.0;
+
+const char* const kOpening = R"(umber = 0x7D6B3F
+set encoding utf8
 set datafile separator "\t"
-ink = 0x16212B
-line = 0x1B7F8F
-band = 0xCDE5E7
-guide = 0xBCAF93
-umber = 0x7D6B3F
-hair = 0xEDEAE3
-grey = 0x8A9299
-soft = 0x46525C
-do for [format in "svg pdf png"] {
+do for [format in formats] {
   reset
   unset key
-  if (format eq "svg") { set terminal svg size 620,HEIGHTS fixed enhanced font face.",8" fontscale 1.333 linewidth 1.333 background "white" }
-  if (format eq "pdf") { set terminal pdfcairo size 6.458in,HEIGHTI enhanced font face.",8" fontscale 0.75 linewidth 2 }
-  if (format eq "png") { set terminal pngcairo size 1937,HEIGHTP enhanced font face.",8" fontscale 3.125 linewidth 4.17 pointscale 4.17 background "white" }
-  set output "prediction.".format
+)";
+
+const char* const kOpenPage = R"(  set output "prediction.".format
   set multiplot
   set border 3 linewidth 0.6 linecolor rgb soft back
   set grid ytics linetype 1 linewidth 0.4 linecolor rgb hair back
@@ -45,22 +39,14 @@ do for [format in "svg pdf png"] {
   set rmargin at screen 0.97
 )";
 
-std::string replaced(std::string text, const std::string& what, const std::string& by) {
-  for (std::size_t at = text.find(what); at != std::string::npos; at = text.find(what, at + by.size())) {
-    text.replace(at, what.size(), by);
-  }
-  return text;
-}
-
 /// The chosen lines, or the brightest ones where none are chosen, get a name.
 std::vector<const PredictedLine*> named_lines(const Prediction& prediction) {
   std::vector<const PredictedLine*> lines;
   for (const PredictedLine& line : prediction.lines) {
     if (prediction.choose == 0 || line.chosen) lines.push_back(&line);
   }
-  std::stable_sort(lines.begin(), lines.end(), [](const PredictedLine* a, const PredictedLine* b) {
-    return a->peak_k > b->peak_k;
-  });
+  std::stable_sort(lines.begin(), lines.end(),
+                   [](const PredictedLine* a, const PredictedLine* b) { return a->peak_k > b->peak_k; });
   if (lines.size() > kMostLabels) lines.resize(kMostLabels);
   return lines;
 }
@@ -68,15 +54,16 @@ std::vector<const PredictedLine*> named_lines(const Prediction& prediction) {
 std::string lines_data(const Prediction& prediction) {
   std::string text = "# frequency [GHz]\tpeak [K]\trms [K]\tW [K km/s]\tchosen\n";
   for (const PredictedLine& line : prediction.lines) {
-    text += fmt::format("{:.9g}\t{:.6g}\t{:.6g}\t{:.6g}\t{}\n", line.frequency_mhz / 1e3, line.peak_k, line.rms_k,
-                        line.intensity_k_km_s, line.chosen ? 1 : 0);
+    text += fmt::format("{:.9g}\t{:.6g}\t{:.6g}\t{:.6g}\t{}\n", line.frequency_mhz / 1e3, line.peak_k,
+                        line.rms_k, line.intensity_k_km_s, line.chosen ? 1 : 0);
   }
   return text;
 }
 
 /// The highest peak so near a line that its name would be written across it.
 double peak_around(const Prediction& prediction, const PredictedLine& line) {
-  const double near_mhz = 0.012 * (prediction.lines.back().frequency_mhz - prediction.lines.front().frequency_mhz);
+  const double near_mhz =
+      0.012 * (prediction.lines.back().frequency_mhz - prediction.lines.front().frequency_mhz);
   double peak = line.peak_k;
   for (const PredictedLine& other : prediction.lines) {
     if (std::abs(other.frequency_mhz - line.frequency_mhz) <= near_mhz) peak = std::max(peak, other.peak_k);
@@ -84,12 +71,13 @@ double peak_around(const Prediction& prediction, const PredictedLine& line) {
   return peak;
 }
 
-/// Names of neighbours are moved to the right until they stand side by side.
+/// Names of neighbours are moved until they stand side by side: to the right, and back from the axis's end.
 std::string labels_data(const Prediction& prediction) {
   constexpr double kBeside = 0.024;  // of the axis: the height of a letter
   auto lines = named_lines(prediction);
-  std::sort(lines.begin(), lines.end(),
-            [](const PredictedLine* a, const PredictedLine* b) { return a->frequency_mhz < b->frequency_mhz; });
+  std::sort(lines.begin(), lines.end(), [](const PredictedLine* a, const PredictedLine* b) {
+    return a->frequency_mhz < b->frequency_mhz;
+  });
   const double step_ghz =
       kBeside * (prediction.lines.back().frequency_mhz - prediction.lines.front().frequency_mhz) / 1e3;
   std::vector<FigureText> texts;
@@ -97,6 +85,12 @@ std::string labels_data(const Prediction& prediction) {
     double x_ghz = line->frequency_mhz / 1e3;
     if (!texts.empty()) x_ghz = std::max(x_ghz, texts.back().x + step_ghz);
     texts.push_back({typeset_transition(line->transition), x_ghz, peak_around(prediction, *line)});
+  }
+  double most_ghz =
+      prediction.lines.back().frequency_mhz / 1e3 + step_ghz;  // inside of the axis's own margin
+  for (auto text = texts.rbegin(); text != texts.rend(); ++text) {
+    text->x = std::min(text->x, most_ghz);
+    most_ghz = text->x - step_ghz;
   }
   return figure_texts(texts, kLabelColumns);
 }
@@ -114,7 +108,8 @@ std::string sizes_data(const Prediction& prediction) {
   return text;
 }
 
-/// Ends of the frequency axis with some room, and of the peaks (a decade below the faintest, at most six down).
+/// Ends of the frequency axis with some room, and of the peaks (a decade below the faintest, at most six
+/// down).
 std::string lines_panel(const Prediction& prediction, bool alone) {
   double low = INFINITY, high = 0.0, most = 0.0, least = INFINITY;
   for (const PredictedLine& line : prediction.lines) {
@@ -136,12 +131,15 @@ std::string lines_panel(const Prediction& prediction, bool alone) {
     text += "  set label 3 \"crosses: rms of a channel\" at graph 0.01,0.96 left textcolor rgb umber\n";
   }
   text += fmt::format(
-      "  plot \"prediction-lines.tsv\" using ($5==0?$1:NaN):2:(0):({0:.4g}-$2) with vectors nohead linewidth 1.1 "
+      "  plot \"prediction-lines.tsv\" using ($5==0?$1:NaN):2:(0):({0:.4g}-$2) with vectors nohead linewidth "
+      "1.1 "
       "linecolor rgb grey notitle, \\\n"
       "    \"\" using ($5==1?$1:NaN):2:(0):({0:.4g}-$2) with vectors nohead linewidth 2.2 linecolor rgb line "
       "notitle, \\\n"
-      "    \"\" using ($5==1?$1:NaN):2 with points pointtype 7 pointsize 0.45 linecolor rgb line notitle, \\\n"
-      "    \"\" using 1:3 with points pointtype 2 pointsize 0.3 linewidth 0.8 linecolor rgb guide notitle, \\\n"
+      "    \"\" using ($5==1?$1:NaN):2 with points pointtype 7 pointsize 0.45 linecolor rgb line notitle, "
+      "\\\n"
+      "    \"\" using 1:3 with points pointtype 2 pointsize 0.3 linewidth 0.8 linecolor rgb guide notitle, "
+      "\\\n"
       "    \"prediction-text.tsv\" using 4:5:3 with labels left rotate by 60 offset 0.1,0.5 noenhanced font "
       "face.\",7\" textcolor rgb ink notitle\n",
       floor_k);
@@ -156,9 +154,11 @@ std::string sizes_panel(const Prediction& prediction) {
       "  set xrange [1.7:{}]\n  set yrange [0:*]\n  set xtics 1\n"
       "  set label 1 \"as many of the brightest\" at graph 0.985,0.93 right textcolor rgb umber\n"
       "  set label 2 \"the best set\" at graph 0.985,0.80 right textcolor rgb line\n"
-      "  plot \"prediction-sizes.tsv\" using 1:3 with linespoints pointtype 6 pointsize 0.5 linewidth 1.0 dashtype 2 "
+      "  plot \"prediction-sizes.tsv\" using 1:3 with linespoints pointtype 6 pointsize 0.5 linewidth 1.0 "
+      "dashtype 2 "
       "linecolor rgb guide notitle, \\\n"
-      "    \"\" using 1:2 with linespoints pointtype 7 pointsize 0.5 linewidth 1.4 linecolor rgb line notitle, \\\n"
+      "    \"\" using 1:2 with linespoints pointtype 7 pointsize 0.5 linewidth 1.4 linecolor rgb line "
+      "notitle, \\\n"
       "    \"\" using ($4==1?$1:NaN):2 with points pointtype 6 pointsize 1.3 linewidth 1.0 linecolor rgb ink "
       "notitle\n",
       prediction.aim == Aim::column ? "log_{10} {/:Italic N}" : "{/:Italic T} (K)",
@@ -178,22 +178,22 @@ void draw_prediction(const Prediction& prediction, const std::filesystem::path& 
                                    [](const PredictedLine& line) { return line.peak_k > 0.0; });
   if (!visible) throw SystemError("the prediction has no line in emission to draw");
   const bool two = has_sizes(prediction);
-  std::string opening = replaced(kOpening, "HEIGHTS", two ? "520" : "290");
-  opening = replaced(opening, "HEIGHTI", two ? "5.417in" : "3.021in");
-  opening = replaced(opening, "HEIGHTP", two ? "1625" : "906");
-  const std::string script = fmt::format(
-      "# Predicted lines. To draw them again: gnuplot prediction.gp\nface = \"{}\"\n{}{}{}  unset multiplot\n"
-      "  unset output\n}}\n",
-      kFigureFont, opening, lines_panel(prediction, !two), two ? sizes_panel(prediction) : "");
+  const std::vector<FigureFormat> formats = {FigureFormat::svg, FigureFormat::pdf, FigureFormat::png};
+  const FigureSize size = {kWidthMm, two ? kHeightOfTwoMm : kHeightOfOneMm};
+  const std::string script = "# Predicted lines. To draw them again: gnuplot prediction.gp\n" +
+                             figure_palette(formats) + kOpening + figure_terminals(size) + kOpenPage +
+                             lines_panel(prediction, !two) + (two ? sizes_panel(prediction) : "") +
+                             "  unset multiplot\n  unset output\n}\n";
   write_file(folder / "prediction-lines.tsv", lines_data(prediction));
   write_file(folder / "prediction-text.tsv", labels_data(prediction));
   if (two) write_file(folder / "prediction-sizes.tsv", sizes_data(prediction));
   write_file(folder / "prediction.gp", script);
-  const ProcessOutcome outcome = run_process({"gnuplot", "prediction.gp"}, {.folder = folder, .timeout_s = 120.0});
-  if (outcome.exit_code != 0) {
-    throw SystemError(
-        fmt::format("the figure cannot be drawn: {}", shortened(display_text(outcome.output), 300)));
-  }
+  draw_figure({.script = "prediction.gp",
+               .stem = "prediction",
+               .title = "Predicted lines",
+               .formats = formats,
+               .timeout_s = 120.0},
+              folder);
 }
 
 }  // namespace trotline

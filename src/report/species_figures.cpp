@@ -25,13 +25,8 @@ constexpr FigureSize kLevelsSize = {120.0, 110.0};
 constexpr FigureSize kLinesSize = {160.0, 84.0};
 constexpr double kTextPoints = 7.0;
 
-/// As the plotting program reads it back; quotes and backslashes are octal escapes.
-std::string quoted(const std::string& text) {
-  std::string result = "\"";
-  for (const char c : drawable_text(text))
-    result += c == '\\' ? "\\134" : c == '"' ? "\\042" : std::string(1, c);
-  return result + "\"";
-}
+/// A text as data, in characters for which there are fonts.
+std::string quoted(const std::string& text) { return figure_text(drawable_text(text)); }
 
 /// A panel on a page [mm].
 struct Panel {
@@ -59,7 +54,7 @@ std::string ticks(const char* axis, const Axis& of) {
 /// Opening of a script whose only text is fixed words.
 std::string opening(const char* stem, const std::vector<FigureFormat>& formats, const FigureSize& size) {
   return fmt::format("# To draw it again: gnuplot {}.gp\n", stem) + figure_palette(formats) +
-         "rust = 0xA03A17\nolive = 0x7A8F3A\narray hue[4] = [0x1B7F8F, 0xA03A17, 0x16212B, 0x8A9299]\n"
+         "array hue[4] = [0x1B7F8F, 0xA03A17, 0x16212B, 0x8A9299]\n"
          "set encoding utf8\nset datafile separator \"\\t\"\ndo for [format in formats] {\n  reset\n  unset "
          "key\n" +
          figure_terminals(size) + fmt::format("  set output \"{}.\".format\n  set multiplot\n", stem) +

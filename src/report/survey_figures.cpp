@@ -3,20 +3,16 @@
 #include <algorithm>
 #include <cmath>
 
-#include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/report/display_text.hpp>
 #include <trotline/report/figure.hpp>
 #include <trotline/report/font_coverage.hpp>
-#include <trotline/report/process.hpp>
 #include <trotline/report/survey_figures.hpp>
-#include <trotline/report/text_measure.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kWidthMm = 130.0;
-constexpr double kHeightMm = 96.0;
+constexpr FigureSize kSize = {130.0, 96.0};
 constexpr std::size_t kMostNames = 8;  // colours and shapes that can be told apart
 constexpr double kFirstName = 0.9;     // height of the first name, of the page
 constexpr double kNameStep = 0.055;
@@ -25,33 +21,13 @@ constexpr double kNameLeft = 0.82;
 // Lightness falls from one to the next, so that they keep apart in greyscale; shapes differ too.
 const char* const kOpening = R"(set encoding utf8
 set datafile separator "\t"
-ink = 0x16212B
-line = 0x1B7F8F
-band = 0xCDE5E7
-sand = 0xF3EDDF
-guide = 0xBCAF93
-hair = 0xEDEAE3
-grey = 0x8A9299
-soft = 0x46525C
 rust = 0xA03A17
 array hue[8] = [0x1B7F8F, 0x16212B, 0xC98A2B, 0x7A9A4B, 0xA03A17, 0x6B4C8A, 0x8A9299, 0x3F6FB0]
 array shape[8] = [7, 5, 9, 13, 11, 15, 6, 4]
-do for [format in "svg pdf"] {
+do for [format in formats] {
   reset
   unset key
 )";
-
-std::string terminals() {
-  const double width_in = kWidthMm / 25.4, height_in = kHeightMm / 25.4;
-  return fmt::format(
-      "  if (format eq \"svg\") {{ set terminal svg size {},{} fixed enhanced font face.\",8\" fontscale "
-      "1.333 "
-      "linewidth 1.333 background \"white\" }}\n"
-      "  if (format eq \"pdf\") {{ set terminal pdfcairo size {:.4f}in,{:.4f}in enhanced font face.\",8\" "
-      "fontscale "
-      "0.75 linewidth 2 }}\n",
-      std::lround(width_in * 96.0), std::lround(height_in * 96.0), width_in, height_in);
-}
 
 std::string frame(const char* x_name, const char* y_name) {
   return fmt::format(
@@ -216,7 +192,8 @@ const char* caption_of(SurveyFigure figure) {
     case SurveyFigure::temperature_column:
       return "Temperature against column density, with standard errors.";
     case SurveyFigure::temperature_histogram:
-      return "How many jobs of all species have which temperature; the last bar holds all hotter ones too. Stated "
+      return "How many jobs of all species have which temperature; the last bar holds all hotter ones too. "
+             "Stated "
              "temperatures are left out.";
     case SurveyFigure::species_pairs:
       return "Column densities of two species in the same source; the dashed line marks equal ones.";
@@ -234,23 +211,24 @@ std::string figure_texts(const std::vector<FigureText>& texts, std::size_t most_
   std::string bytes = "# number\ttext\ttext for which there are fonts\tx\ty\n";
   for (std::size_t i = 0; i < texts.size(); ++i) {
     const std::string text = shortened(display_text(texts[i].text), most_columns);
-    bytes += fmt::format("{}\t{}\t{}\t{:.9g}\t{:.9g}\n", i + 1, figure_text(text), figure_text(drawable_text(text)),
-                         texts[i].x, texts[i].y);
+    bytes += fmt::format("{}\t{}\t{}\t{:.9g}\t{:.9g}\n", i + 1, figure_text(text),
+                         figure_text(drawable_text(text)), texts[i].x, texts[i].y);
   }
   return bytes;
 }
 
 void draw_survey_figure(const SurveyFigureInput& input, const std::filesystem::path& folder) {
   const std::string name = name_of(input.figure);
-  const std::string script = fmt::format("# To draw it again: gnuplot {}.gp\nface = \"{}\"\n{}{}{}", name,
-                                         kFigureFont, kOpening, terminals(), body(input));
-  write_file(folder / (name + ".gp"), script);
-  const ProcessOutcome outcome =
-      run_process({"gnuplot", name + ".gp"}, {.folder = folder, .timeout_s = 120.0});
-  if (outcome.exit_code != 0) {
-    throw SystemError(
-        fmt::format("the figure {} cannot be drawn: {}", name, shortened(display_text(outcome.output), 300)));
-  }
+  const std::vector<FigureFormat> formats = {FigureFormat::svg, FigureFormat::pdf};
+  write_file(folder / (name + ".gp"), fmt::format("# To draw it again: gnuplot {}.gp\n", name) +
+                                          figure_palette(formats) + kOpening + figure_terminals(kSize) +
+                                          body(input));
+  draw_figure({.script = name + ".gp",
+               .stem = name,
+               .title = caption_of(input.figure),
+               .formats = formats,
+               .timeout_s = 120.0},
+              folder);
 }
 
 }  // namespace trotline

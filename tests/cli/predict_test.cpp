@@ -1,5 +1,9 @@
 #include <nlohmann/json.hpp>
 
+#include <sstream>
+
+#include <trotline/base/files.hpp>
+
 #include "program_fixture.hpp"
 
 namespace trotline {
@@ -11,8 +15,8 @@ using ::testing::IsSupersetOf;
 class Predict : public ProgramTest {
  protected:
   static std::vector<std::string> command(const std::vector<std::string>& more) {
-    std::vector<std::string> all = {"predict",       "CS",     "--temperature", "20 K",
-                                    "--line-width",  "2 km/s", "--column-density", "1e13 cm-2"};
+    std::vector<std::string> all = {"predict",      "CS",     "--temperature",    "20 K",
+                                    "--line-width", "2 km/s", "--column-density", "1e13 cm-2"};
     all.insert(all.end(), more.begin(), more.end());
     return all;
   }
@@ -33,8 +37,8 @@ TEST_F(Predict, WritesJsonTableAndFigure) {
 }
 
 TEST_F(Predict, TellsLinesChoiceAndWhatTheModelIs) {
-  const Outcome outcome = run(command({"--bands", "80 GHz..400 GHz at 120 K", "--time", "30 min", "--channel",
-                                       "0.5 km/s", "--choose", "3"}));
+  const Outcome outcome = run(command(
+      {"--bands", "80 GHz..400 GHz at 120 K", "--time", "30 min", "--channel", "0.5 km/s", "--choose", "3"}));
   ASSERT_EQ(outcome.code, ExitCode::done) << outcome.err;
   EXPECT_THAT(outcome.out, HasSubstr("one layer in LTE"));
   EXPECT_THAT(outcome.out, HasSubstr("chosen"));
@@ -50,6 +54,34 @@ TEST_F(Predict, WrongOptionsAreExplained) {
   EXPECT_THAT(err({"--aim", "temprature"}), HasSubstr("did you mean 'temperature'"));
   EXPECT_EQ(run({"predict", "CS"}).code, ExitCode::bad_input);
   EXPECT_EQ(run(command({"--channel", "fast"})).code, ExitCode::wrong_command_line);
+}
+
+/// Three of these four lines lie side by side at the end of the axis: all are named, inside of it.
+TEST_F(Predict, EveryChosenLineIsNamedInTheFigure) {
+  const std::string out = (folder_.path() / "named").string();
+  const Outcome outcome = run({"predict", "H2CO", "--temperature", "60 K", "--column-density", "3e13 cm-2",
+                               "--line-width", "3 km/s", "--bands", "200 GHz..300 GHz", "--rms", "20 mK",
+                               "--channel", "0.5 km/s", "--choose", "4", "--out", out});
+  ASSERT_EQ(outcome.code, ExitCode::done) << outcome.err;
+  std::istringstream lines(read_file(out + "/prediction-lines.tsv"));
+  double last_ghz = 0.0;
+  int chosen = 0;
+  for (std::string line; std::getline(lines, line);) {
+    if (line.starts_with("#")) continue;
+    last_ghz = std::stod(line);
+    chosen += line.ends_with("\t1") ? 1 : 0;
+  }
+  std::istringstream texts(read_file(out + "/prediction-text.tsv"));
+  int named = 0;
+  for (std::string line; std::getline(texts, line);) {
+    if (line.starts_with("#")) continue;
+    const std::size_t y = line.rfind('\t');
+    const double x_ghz = std::stod(line.substr(line.rfind('\t', y - 1) + 1));
+    EXPECT_LT(x_ghz, 1.01 * last_ghz) << line;  // the axis has at least that margin
+    ++named;
+  }
+  EXPECT_EQ(chosen, 4);
+  EXPECT_EQ(named, chosen);
 }
 
 }  // namespace
