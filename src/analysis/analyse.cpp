@@ -7,6 +7,7 @@
 #include <trotline/analysis/analyse.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/version.hpp>
+#include <trotline/physics/angle.hpp>
 #include <trotline/physics/constants.hpp>
 
 #include "checks.hpp"
@@ -19,7 +20,6 @@
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr double kStrikingSigma = 3.0;
 constexpr double kLeastPlainSnr = 5.0;  // below it the logarithm's bias sigma^2/2W^2 exceeds 2 %
 

@@ -2,13 +2,13 @@
 #include <trotline/analysis/measure_description.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 #include <trotline/physics/constants.hpp>
 #include <trotline/physics/quantity.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = 3.14159265358979323846 / (180.0 * 3600.0);
 constexpr double kMetresPerKm = 1e3;
 const char* const kNotGiven = "not given";
 

@@ -10,13 +10,13 @@
 
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 
 #include "model_partitions.hpp"
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr double kSpeedOfLightKmS = constants::kLightMPerS / 1e3;
 constexpr double kLeastLnColumn = 9.21;  // 1e4 cm^-2
 constexpr double kMostLnColumn = 59.87;  // 1e26 cm^-2

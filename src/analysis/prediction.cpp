@@ -9,12 +9,12 @@
 
 #include <trotline/base/errors.hpp>
 #include <trotline/excitation/forward_model.hpp>
+#include <trotline/physics/angle.hpp>
 #include <trotline/physics/planck.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr double kMostLines = 20000;  // in the bands: beyond, a band is meant to be narrower
 constexpr std::size_t kSizesBeyond = 3;
 constexpr std::size_t kLeastSizes = 8;

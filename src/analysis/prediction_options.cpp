@@ -6,11 +6,11 @@
 #include <trotline/analysis/prediction.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 constexpr std::size_t kMostChosen = 40;
 
 double positive(const std::string& text, Dimension dimension) {

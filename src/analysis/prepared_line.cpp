@@ -9,12 +9,12 @@
 
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 #include <trotline/physics/intensity_scale.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 
 double needed(const std::optional<double>& in_row, const std::optional<double>& in_options,
               const Place& place, const char* what, const char* advice) {

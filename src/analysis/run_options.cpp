@@ -6,11 +6,11 @@
 #include <trotline/analysis/run_options.hpp>
 #include <trotline/base/errors.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 
 namespace trotline {
 namespace {
 
-constexpr double kRadPerArcsec = std::numbers::pi / (180.0 * 3600.0);
 
 std::string show_number(double value, const char* unit) {
   return unit[0] == '\0' ? fmt::format("{:.10g}", value) : fmt::format("{:.10g} {}", value, unit);

@@ -5,6 +5,7 @@
 #include <trotline/base/errors.hpp>
 #include <trotline/base/files.hpp>
 #include <trotline/base/text.hpp>
+#include <trotline/physics/angle.hpp>
 #include <trotline/report/model_file.hpp>
 
 namespace trotline {
@@ -12,7 +13,6 @@ namespace {
 
 using Json = nlohmann::json;
 
-constexpr double kRadPerArcsec = 3.14159265358979323846 / (180.0 * 3600.0);
 
 Json document(const std::string& path) {
   constexpr std::size_t kMostBytes = std::size_t{1} << 28;
