@@ -9,7 +9,9 @@
 #include <trotline/base/errors.hpp>
 
 #include "diagram_results.hpp"
+#include "column_scan.hpp"
 #include "model_answer.hpp"
+#include "model_predictions.hpp"
 
 namespace trotline {
 namespace {
