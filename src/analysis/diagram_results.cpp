@@ -165,6 +165,22 @@ void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
   tabulate_columns(result, lines, partition, options, true);
 }
 
+void say_one_energy(Result& result) {
+  result.status = Status::one_line;
+  result.message = "all lines have the same upper energy: no temperature; give 'temperature' for N";
+}
+
+void say_outside_of_q(Result& result, const ThermalLineFit& fit, const PartitionFunction& partition) {
+  const double t = 1.0 / fit.inverse_temperature_per_k;
+  result.status = Status::unbounded;
+  result.message = fmt::format(
+      "the line gives T = {:.4g} K, outside the range in which the species has a Q(T), {:g} K to {:g} K: no "
+      "column density",
+      t, partition.lowest_k(), partition.highest_k());
+  result.temperature_k.value = t;
+  result.temperature_k.error = t * t * std::sqrt(fit.inverse_temperature_variance);
+}
+
 void require_usable_temperature(double temperature_k, double background_k, const Species& species) {
   const PartitionFunction& partition = *species.partition;
   if (temperature_k <= background_k) {

@@ -57,6 +57,12 @@ void tabulate_columns(Result& result, const std::vector<PreparedLine>& lines,
 void say_nothing_to_fit(Result& result, const std::vector<PreparedLine>& lines,
                         const PartitionFunction& partition, const RunOptions& options);
 
+/// The status of lines that all have the same upper energy.
+void say_one_energy(Result& result);
+
+/// The status where the diagram's line gives a temperature for which there is no Q(T).
+void say_outside_of_q(Result& result, const ThermalLineFit& fit, const PartitionFunction& partition);
+
 /// @throws InputError where a given temperature lies below the background or outside the range of Q
 void require_usable_temperature(double temperature_k, double background_k, const Species& species);
 

@@ -53,24 +53,12 @@ void say_not_thermal(Result& result, const ThermalLineFit& fit) {
   if (steepest > 0.0) result.message += fmt::format("; T is above {:.3g} K (95 %)", 1.0 / steepest);
 }
 
-void say_outside_of_q(Result& result, const ThermalLineFit& fit, const PartitionFunction& partition) {
-  const double t = 1.0 / fit.inverse_temperature_per_k;
-  result.status = Status::unbounded;
-  result.message = fmt::format(
-      "the slope gives T = {:.4g} K, outside the range in which the species has a Q(T), {:g} K to {:g} K: no "
-      "column density",
-      t, partition.lowest_k(), partition.highest_k());
-  result.temperature_k.value = t;
-  result.temperature_k.error = t * t * std::sqrt(fit.inverse_temperature_variance);
-}
-
 /// Two lines or more: T and N.
 void fit_both(Result& result, std::vector<PreparedLine>& lines, const DiagramData& data,
               const PartitionFunction& partition) {
   const ThermalLineFit fit = fit_thermal_line(data);
   if (fit.status == ThermalStatus::one_energy) {
-    result.status = Status::one_line;
-    result.message = "all lines have the same upper energy: no temperature; give 'temperature' for N";
+    say_one_energy(result);
     return;
   }
   if (fit.status != ThermalStatus::no_minimum) set_diagram_line(result, fit);

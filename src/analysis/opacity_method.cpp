@@ -79,8 +79,7 @@ void fill_done(Result& result, std::vector<PreparedLine>& lines, const OpacityLi
 
 void say_no_fit(Result& result, OpacityLineStatus status) {
   if (status == OpacityLineStatus::one_energy) {
-    result.status = Status::one_line;
-    result.message = "all lines have the same upper energy: no temperature; give 'temperature' for N";
+    say_one_energy(result);
   } else if (status == OpacityLineStatus::not_thermal) {
     result.status = Status::not_thermal;
     result.message =
@@ -100,11 +99,7 @@ void fit_both(Result& result, std::vector<PreparedLine>& lines, const OpacityLin
   if (fit.status != OpacityLineStatus::done) {
     say_no_fit(result, fit.status);
   } else if (t < partition.lowest_k() || t > partition.highest_k()) {
-    result.status = Status::unbounded;
-    result.message = fmt::format(
-        "the line gives T = {:.4g} K, outside the range in which the species has a Q(T), "
-        "{:g} K to {:g} K: no column density",
-        t, partition.lowest_k(), partition.highest_k());
+    say_outside_of_q(result, fit.line, partition);
   } else {
     fill_done(result, lines, data, fit, partition);
   }
